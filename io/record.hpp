@@ -1,0 +1,74 @@
+// The record of a run: one HDF5 file, openPMD 1.1.0 for the mesh fields, our own groups beside them.
+#pragma once
+
+#include <memory>
+#include <string>
+#include <vector>
+
+#include "io/scene.hpp"
+#include "solver/results.hpp"
+
+namespace wanewall {
+
+struct Provenance {
+  std::string program_version, build_type, compiler, processor, host_system;
+  std::string started_utc, ended_utc;  ///< "YYYY-MM-DD HH:mm:ss +0000"
+  int threads = 0;
+  std::string vector_code, schedule;
+};
+
+/// Writes a record beside its final name and gives it that name only when it is whole. A writer that is destroyed
+/// before finish() removes its unfinished file. All failures throw FileError.
+class RecordWriter : public Sink {
+ public:
+  RecordWriter(const std::string& path, const Scene& scene);
+  ~RecordWriter() override;
+  RecordWriter(const RecordWriter&) = delete;
+  RecordWriter& operator=(const RecordWriter&) = delete;
+
+  void take(const Snapshot& snapshot) override;
+  /// Adds the run's series, audit and provenance, closes, syncs and renames. With `xdmf`, also writes path + ".xdmf".
+  void finish(const RunResult& result, const Provenance& provenance, bool xdmf);
+
+ private:
+  struct State;
+  std::unique_ptr<State> state_;
+};
+
+/// Where a recorded snapshot component lives in time and space.
+struct SnapshotList {
+  std::string name;
+  Component component = Component::ex;
+  std::vector<long> steps;
+  std::vector<double> times_s;
+  std::array<std::vector<double>, 3> positions_m;
+};
+
+/// A record read back. The light parts are loaded at once, snapshots on demand.
+class Record {
+ public:
+  /// Throws FileError when the file is missing, not a record, of a newer layout, or damaged.
+  explicit Record(const std::string& path);
+  ~Record();
+  Record(const Record&) = delete;
+  Record& operator=(const Record&) = delete;
+
+  std::string title, scene_text;
+  std::vector<UsedValue> used;
+  double band_lo_hz = 0.0, band_hi_hz = 0.0;
+  Provenance provenance;
+  Lattice lattice;
+  Precision precision = Precision::single_precision;
+  std::array<FaceKind, 6> face_kinds{};
+  RunResult result;
+  std::vector<SnapshotList> snapshots;
+
+  /// One recorded step of one snapshot component.
+  Snapshot load(const SnapshotList& list, std::size_t which) const;
+
+ private:
+  struct State;
+  std::unique_ptr<State> state_;
+};
+
+}  // namespace wanewall
