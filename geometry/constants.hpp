@@ -1,5 +1,5 @@
-// Constants of the vacuum. c0 is exact; mu0 is the CODATA 2018 value (E. Tiesinga et al., Rev. Mod. Phys. 93, 025010
-// (2021)); eps0 follows, so that eps0 mu0 c0^2 = 1 to rounding.
+// Constants of the vacuum. c0 is exact; mu0 is the CODATA 2018 value (E. Tiesinga et al., Rev. Mod. Phys. 93,
+// 025010 (2021)); eps0 follows, so that eps0 mu0 c0^2 = 1 to rounding.
 #pragma once
 
 #include <numbers>

@@ -33,26 +33,54 @@ enum class Component { ex, ey, ez, hx, hy, hz };
 inline constexpr std::array<Component, 6> all_components{Component::ex, Component::ey, Component::ez,
                                                          Component::hx, Component::hy, Component::hz};
 
-constexpr int index_of(Axis a) { return static_cast<int>(a); }
-constexpr int index_of(Side s) { return static_cast<int>(s); }
-constexpr int index_of(Component c) { return static_cast<int>(c); }
+constexpr int index_of(Axis a) {
+  return static_cast<int>(a);
+}
+constexpr int index_of(Side s) {
+  return static_cast<int>(s);
+}
+constexpr int index_of(Component c) {
+  return static_cast<int>(c);
+}
 
-constexpr Axis axis_of(Side s) { return static_cast<Axis>(index_of(s) / 2); }
-constexpr bool is_high(Side s) { return index_of(s) % 2 == 1; }
-constexpr Side side_of(Axis a, bool high) { return static_cast<Side>(2 * index_of(a) + (high ? 1 : 0)); }
-constexpr Side opposite(Side s) { return side_of(axis_of(s), !is_high(s)); }
+constexpr Axis axis_of(Side s) {
+  return static_cast<Axis>(index_of(s) / 2);
+}
+constexpr bool is_high(Side s) {
+  return index_of(s) % 2 == 1;
+}
+constexpr Side side_of(Axis a, bool high) {
+  return static_cast<Side>(2 * index_of(a) + (high ? 1 : 0));
+}
+constexpr Side opposite(Side s) {
+  return side_of(axis_of(s), !is_high(s));
+}
 
-constexpr bool is_electric(Component c) { return index_of(c) < 3; }
-constexpr Axis axis_of(Component c) { return static_cast<Axis>(index_of(c) % 3); }
-constexpr Component electric(Axis a) { return static_cast<Component>(index_of(a)); }
-constexpr Component magnetic(Axis a) { return static_cast<Component>(3 + index_of(a)); }
+constexpr bool is_electric(Component c) {
+  return index_of(c) < 3;
+}
+constexpr Axis axis_of(Component c) {
+  return static_cast<Axis>(index_of(c) % 3);
+}
+constexpr Component electric(Axis a) {
+  return static_cast<Component>(index_of(a));
+}
+constexpr Component magnetic(Axis a) {
+  return static_cast<Component>(3 + index_of(a));
+}
 
 /// The two axes across a normal, in cyclic order: x -> (y, z), y -> (z, x), z -> (x, y).
-constexpr Axis next(Axis a) { return static_cast<Axis>((index_of(a) + 1) % 3); }
-constexpr Axis previous(Axis a) { return static_cast<Axis>((index_of(a) + 2) % 3); }
+constexpr Axis next(Axis a) {
+  return static_cast<Axis>((index_of(a) + 1) % 3);
+}
+constexpr Axis previous(Axis a) {
+  return static_cast<Axis>((index_of(a) + 2) % 3);
+}
 
 /// Whether the component sits half a cell up from its index along the axis.
-constexpr bool is_half(Component c, Axis a) { return is_electric(c) == (axis_of(c) == a); }
+constexpr bool is_half(Component c, Axis a) {
+  return is_electric(c) == (axis_of(c) == a);
+}
 
 std::string_view name_of(Axis a);       ///< "x", "y", "z"
 std::string_view name_of(Side s);       ///< "x-", "x+", ...
@@ -124,14 +152,19 @@ struct Lattice {
   double position_m(Component c, Axis a, int i) const;
   Vec3 position_m(Component c, Index3 at) const;
 
-  /// Largest stable time step: c0 dt <= 1 / sqrt(sum 1/d^2). An axis that is one periodic cell wide carries no
-  /// variation and does not count. Source: A. Taflove and S. C. Hagness, Computational Electrodynamics, 3rd ed.
+  /// Largest stable time step: c0 dt <= 1 / sqrt(sum 1/d^2). An axis that is one periodic cell wide carries
+  /// no variation and does not count. Source: A. Taflove and S. C. Hagness, Computational Electrodynamics,
+  /// 3rd ed.
   double courant_limit_s() const;
   double courant_number() const { return dt_s / courant_limit_s(); }
 };
 
 /// dt_s and time levels: E at n dt, H half a step later.
-constexpr double time_of_e_s(long step, double dt_s) { return static_cast<double>(step) * dt_s; }
-constexpr double time_of_h_s(long step, double dt_s) { return (static_cast<double>(step) + 0.5) * dt_s; }
+constexpr double time_of_e_s(long step, double dt_s) {
+  return static_cast<double>(step) * dt_s;
+}
+constexpr double time_of_h_s(long step, double dt_s) {
+  return (static_cast<double>(step) + 0.5) * dt_s;
+}
 
 }  // namespace wanewall

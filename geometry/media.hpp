@@ -5,8 +5,8 @@
 
 namespace wanewall {
 
-/// A homogeneous, isotropic, linear medium. Relative permittivity and permeability are >= 1 in passive media the
-/// time step is made for; conductivities are >= 0.
+/// A homogeneous, isotropic, linear medium. Relative permittivity and permeability are >= 1 in passive media
+/// the time step is made for; conductivities are >= 0.
 struct Medium {
   std::string name;
   double permittivity_rel = 1.0;

@@ -57,8 +57,8 @@ struct Interval {
   bool empty() const { return !(lo_m <= hi_m); }
 };
 
-/// Where the line (x, y, all z) runs inside a shape. The shape counts as closed and grown by `tolerance_m`, so that
-/// faces that lie on mesh lines belong to it. Ends may be +-infinity.
+/// Where the line (x, y, all z) runs inside a shape. The shape counts as closed and grown by `tolerance_m`,
+/// so that faces that lie on mesh lines belong to it. Ends may be +-infinity.
 Interval z_interval(const Shape& shape, double x_m, double y_m, double tolerance_m);
 
 /// Box with edges along the axes that holds the shape; ends may be +-infinity.

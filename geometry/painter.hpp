@@ -1,12 +1,13 @@
 // The painter: what each edge (E component) and each face (H component) of the lattice is made of.
 //
-// A later object covers an earlier one. Objects have no end at the shell: they run on through it to the outer wall.
-// An edge is a perfect conductor when the topmost object at its midpoint is one (objects are closed sets, so edges on
-// the surface of a conductor belong to it). Otherwise its medium is the mean over eight points at +-1/4 cell around
-// the midpoint, conductors left out: across the edge the arithmetic mean (E is continuous there), along the edge the
-// series mean (D is continuous there):  1/eps = mean(1/eps_i), sigma = eps^2 mean(sigma_i / eps_i^2), the first-order
-// form of 1/y = mean(1/y_i) for sigma << omega eps. Faces are treated in the dual way with mu and magnetic loss.
-// Flat boundaries on mesh lines keep the scheme second order; others are known to a quarter cell.
+// A later object covers an earlier one. Objects have no end at the shell: they run on through it to the outer
+// wall. An edge is a perfect conductor when the topmost object at its midpoint is one (objects are closed
+// sets, so edges on the surface of a conductor belong to it). Otherwise its medium is the mean over eight
+// points at +-1/4 cell around the midpoint, conductors left out: across the edge the arithmetic mean (E is
+// continuous there), along the edge the series mean (D is continuous there):  1/eps = mean(1/eps_i), sigma =
+// eps^2 mean(sigma_i / eps_i^2), the first-order form of 1/y = mean(1/y_i) for sigma << omega eps. Faces are
+// treated in the dual way with mu and magnetic loss. Flat boundaries on mesh lines keep the scheme second
+// order; others are known to a quarter cell.
 #pragma once
 
 #include <vector>
@@ -17,8 +18,9 @@
 
 namespace wanewall {
 
-/// What one edge or face is made of. For an edge: relative permittivity and electric conductivity [S/m]; for a face:
-/// relative permeability and magnetic conductivity [ohm/m]. A perfect one has its own field fixed at zero.
+/// What one edge or face is made of. For an edge: relative permittivity and electric conductivity [S/m]; for
+/// a face: relative permeability and magnetic conductivity [ohm/m]. A perfect one has its own field fixed at
+/// zero.
 struct Paint {
   double relative = 1.0;
   double loss = 0.0;
@@ -35,13 +37,11 @@ class Painter {
   /// Paints the row (i, j, all k) of a component: one entry per stored k. Thread safe.
   void row(Component c, int i, int j, std::vector<Paint>& out) const;
 
-  /// Index of the medium at a point (topmost object, else background). Points on a boundary belong to the object.
+  /// Index of the medium at a point (topmost object, else background). Points on a boundary belong to the
+  /// object.
   int medium_at(const Vec3& point_m) const;
 
  private:
-  struct Run {  // [begin, end) along z in units of samples, painted with one medium
-    int begin, end, medium;
-  };
   void sample_line(double x_m, double y_m, const std::vector<double>& z_m, double tolerance_m,
                    std::vector<int>& medium_of_sample) const;
 
@@ -50,7 +50,8 @@ class Painter {
   const std::vector<Object>& objects_;
   int background_;
   double tolerance_m_;
-  // z positions of the samples, for node and half rows: at the point itself and a quarter cell below and above.
+  // z positions of the samples, for node and half rows: at the point itself and a quarter cell below and
+  // above.
   std::vector<double> node_z_m_, node_z_lo_m_, node_z_hi_m_, half_z_m_, half_z_lo_m_, half_z_hi_m_;
 };
 

@@ -17,29 +17,34 @@
 namespace wanewall {
 
 enum class Precision { single_precision, double_precision };
-constexpr std::size_t bytes_of(Precision p) { return p == Precision::single_precision ? 4 : 8; }
+constexpr std::size_t bytes_of(Precision p) {
+  return p == Precision::single_precision ? 4 : 8;
+}
 
 enum class FaceKind { cfs_pml, matched_slab, electric_wall, magnetic_wall, periodic };
 std::string_view name_of(FaceKind kind);
-constexpr bool absorbs(FaceKind kind) { return kind == FaceKind::cfs_pml || kind == FaceKind::matched_slab; }
+constexpr bool absorbs(FaceKind kind) {
+  return kind == FaceKind::cfs_pml || kind == FaceKind::matched_slab;
+}
 
-/// One face of the shell. The table has as many cells as the lattice's shell on that side; it is empty for walls and
-/// periodic faces. `matched_slab` uses only the conductivities of the table.
+/// One face of the shell. The table has as many cells as the lattice's shell on that side; it is empty for
+/// walls and periodic faces. `matched_slab` uses only the conductivities of the table.
 struct Face {
   FaceKind kind = FaceKind::electric_wall;
   LayerTable layer;
 };
 
 /// Plane wave through a total-field/scattered-field surface.
-///   theta from +z, phi from +x: where the wave comes from; e_angle turns E from the theta unit vector towards phi's.
+///   theta from +z, phi from +x: where the wave comes from; e_angle turns E from the theta unit vector
+///   towards phi's.
 struct PlaneWave {
   double theta_rad = 0.0;
   double phi_rad = 0.0;
   double e_angle_rad = 0.0;
   double peak_v_per_m = 1.0;
   Pulse pulse;
-  /// Nodes of the total-field box (both ends belong to it) and which of its six faces exist. A missing face means
-  /// that the total field runs on to the wall or periodic side there.
+  /// Nodes of the total-field box (both ends belong to it) and which of its six faces exist. A missing face
+  /// means that the total field runs on to the wall or periodic side there.
   Index3 box_lo{};
   Index3 box_hi{};
   std::array<bool, 6> box_face{true, true, true, true, true, true};
@@ -62,8 +67,8 @@ struct PointRequest {
   Vec3 position_m{};
 };
 
-/// A plane (normal set, lo = hi along it) or a sub-volume (no normal), recorded every `every` steps, with every
-/// `stride`-th lattice position kept along each axis.
+/// A plane (normal set, lo = hi along it) or a sub-volume (no normal), recorded every `every` steps, with
+/// every `stride`-th lattice position kept along each axis.
 struct SnapshotRequest {
   std::string name;
   std::optional<Axis> normal;
@@ -77,7 +82,8 @@ struct SnapshotRequest {
 struct AuditRequest {
   std::vector<double> frequencies_hz;  ///< empty: no audit
   std::array<bool, 6> faces{};
-  int sample_every = 0;  ///< steps; 0: as few samples as the pulse's spectrum allows (see recorders/audit.hpp)
+  int sample_every =
+      0;  ///< steps; 0: as few samples as the pulse's spectrum allows (see recorders/audit.hpp)
 };
 
 struct Recording {
@@ -90,8 +96,8 @@ struct Recording {
 /// The run ends at the first of the two.
 struct StopRule {
   double at_s = 0.0;
-  /// Field energy in the clear volume, relative to its largest value so far [dB]. Not tested before the source has
-  /// ended.
+  /// Field energy in the clear volume, relative to its largest value so far [dB]. Not tested before the
+  /// source has ended.
   std::optional<double> energy_below_db;
 };
 
@@ -116,8 +122,8 @@ struct Problem {
   long last_step() const;  ///< the step at which `stop.at_s` is reached
 };
 
-/// Thrown by everything that turns a problem into a run when the problem cannot be computed as asked. The text says
-/// what is wrong, what is allowed and what to do next.
+/// Thrown by everything that turns a problem into a run when the problem cannot be computed as asked. The
+/// text says what is wrong, what is allowed and what to do next.
 struct ProblemError : std::runtime_error {
   using std::runtime_error::runtime_error;
 };

@@ -11,8 +11,8 @@
 namespace wanewall {
 
 /// One component of one snapshot at one step. Values are in V/m or A/m, index order [x][y][z] with z fastest.
-/// positions_m[a] holds the coordinates along axis a (one entry for a plane's normal). A plane's values are linearly
-/// interpolated along its normal from the two nearest lattice layers.
+/// positions_m[a] holds the coordinates along axis a (one entry for a plane's normal). A plane's values are
+/// linearly interpolated along its normal from the two nearest lattice layers.
 struct Snapshot {
   std::string name;
   long step = 0;
@@ -49,7 +49,8 @@ class Monitor {
 struct PointSeries {
   std::string name;
   Vec3 position_m{};
-  /// [component][step]: step n holds E at n dt and H at (n + 1/2) dt; V/m and A/m; one entry per step, from 0.
+  /// [component][step]: step n holds E at n dt and H at (n + 1/2) dt; V/m and A/m; one entry per step, from
+  /// 0.
   std::array<std::vector<double>, 6> values;
 };
 
@@ -59,22 +60,23 @@ struct EnergySeries {
   std::vector<double> joule;
 };
 
-/// Running DFT on one plane of one component:  F = Q dt sum over sampled n of f(t_n) exp(-j omega t_n), with t_n the
-/// component's own time (n dt or (n + 1/2) dt) and Q = sample_every. V s/m or A s/m.
+/// Running DFT on one plane of one component:  F = Q dt sum over sampled n of f(t_n) exp(-j omega t_n), with
+/// t_n the component's own time (n dt or (n + 1/2) dt) and Q = sample_every. V s/m or A s/m.
 struct AuditPlane {
   Component component = Component::ex;
-  int normal_index = 0;       ///< index of the component along the face's normal
-  double normal_m = 0.0;      ///< and its coordinate
-  std::array<int, 2> shape{}; ///< stored indices along the two tangential axes, in the order x, y, z
+  int normal_index = 0;        ///< index of the component along the face's normal
+  double normal_m = 0.0;       ///< and its coordinate
+  std::array<int, 2> shape{};  ///< stored indices along the two tangential axes, in the order x, y, z
   std::vector<std::complex<float>> sums;  ///< [frequency][first][second]; first and second start at index 0
 };
 
 /// Planes of one face, over the whole cross-section out to the outer walls. "Plane m" counts outwards:
-/// m = 0, 1, 2 are node planes, plane 2 at the shell's first node; half plane m lies half a cell outside plane m.
+/// m = 0, 1, 2 are node planes, plane 2 at the shell's first node; half plane m lies half a cell outside
+/// plane m.
 struct AuditFace {
   Side side = Side::x_lo;
-  /// True when the face's cross-section lies in one medium (split on tangential E). False on side faces of scenes
-  /// layered along z (E_z and H_z recorded instead) and where objects cross the plane.
+  /// True when the face's cross-section lies in one medium (split on tangential E). False on side faces of
+  /// scenes layered along z (E_z and H_z recorded instead) and where objects cross the plane.
   bool is_uniform = true;
   /// True when media at the face depend on z only.
   bool is_layered = false;
@@ -83,8 +85,9 @@ struct AuditFace {
   double permeability_rel = 1.0;
   double conductivity_s_per_m = 0.0;
   /// Uniform: both tangential E on planes 0, 1, 2 and both tangential H on half plane 0.
-  /// Layered: E_z on planes 0, 1, 2 and H_z on half planes -1, 0, 1; the other tangential E on plane 0, the other
-  /// tangential H on half plane 0. In both cases plane 0 and half plane 0 hold all four tangential components.
+  /// Layered: E_z on planes 0, 1, 2 and H_z on half planes -1, 0, 1; the other tangential E on plane 0, the
+  /// other tangential H on half plane 0. In both cases plane 0 and half plane 0 hold all four tangential
+  /// components.
   std::vector<AuditPlane> planes;
 };
 
@@ -114,9 +117,9 @@ struct RunResult {
   double march_seconds = 0.0;
 };
 
-/// Runs a problem from zero fields. Throws ProblemError before the first step when it cannot be computed as asked.
-/// A single-precision or double-precision solver is chosen by the problem. The result does not depend on the number
-/// of threads or the schedule, bit for bit.
+/// Runs a problem from zero fields. Throws ProblemError before the first step when it cannot be computed as
+/// asked. A single-precision or double-precision solver is chosen by the problem. The result does not depend
+/// on the number of threads or the schedule, bit for bit.
 RunResult run(const Problem& problem, Sink& sink, Monitor& monitor);
 
 /// Memory a run will need, by purpose [bytes].
