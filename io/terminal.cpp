@@ -128,9 +128,7 @@ std::string progress_text(const Progress& progress, bool ends_early) {
   const double done = progress.last_step > 0
                           ? static_cast<double>(progress.step) / static_cast<double>(progress.last_step)
                           : 1.0;
-  // 100 % is said only when it is true.
-  const int percent =
-      progress.step >= progress.last_step ? 100 : std::min(99, static_cast<int>(100.0 * done));
+  const int percent = static_cast<int>(100.0 * done);  // rounded down: 100 % is said only when it is true
   std::string text = fmt::format("{:3} %  step {} of {}", percent, progress.step, progress.last_step);
   if (progress.cells_per_second > 0.0)
     text += fmt::format("  {:.3g} Gcell/s", progress.cells_per_second * 1e-9);

@@ -151,6 +151,8 @@ TEST_CASE("The first signal is a wish to stop, also when it comes twice") {
     if (!monitor.go_on(at(1, 2, 0.0))) _exit(1);
     raise(SIGTERM);
     raise(SIGTERM);  // as when a wrapping program signals the child and then its whole group
+    sleep_ms(400);
+    raise(SIGTERM);
     raise(SIGHUP);
     _exit(monitor.go_on(at(1, 2, 0.0)) ? 2 : 42);
   });
