@@ -1,6 +1,7 @@
 // The record of a run: one HDF5 file, openPMD 1.1.0 for the mesh fields, our own groups beside them.
 #pragma once
 
+#include <array>
 #include <memory>
 #include <string>
 #include <vector>
@@ -17,8 +18,8 @@ struct Provenance {
   std::string vector_code, schedule;
 };
 
-/// Writes a record beside its final name and gives it that name only when it is whole. A writer that is destroyed
-/// before finish() removes its unfinished file. All failures throw FileError.
+/// Writes a record beside its final name and gives it that name only when it is whole. A writer that is
+/// destroyed before finish() removes its unfinished file. All failures throw FileError.
 class RecordWriter : public Sink {
  public:
   RecordWriter(const std::string& path, const Scene& scene);
@@ -27,7 +28,8 @@ class RecordWriter : public Sink {
   RecordWriter& operator=(const RecordWriter&) = delete;
 
   void take(const Snapshot& snapshot) override;
-  /// Adds the run's series, audit and provenance, closes, syncs and renames. With `xdmf`, also writes path + ".xdmf".
+  /// Adds the run's series, audit and provenance, closes, syncs and renames. With `xdmf`, also writes path +
+  /// ".xdmf".
   void finish(const RunResult& result, const Provenance& provenance, bool xdmf);
 
  private:
@@ -44,11 +46,15 @@ struct SnapshotList {
   std::array<std::vector<double>, 3> positions_m;
 };
 
+/// Whether to load the planes of the shell audit, which can be large.
+enum class AuditPlanes { load, leave };
+
 /// A record read back. The light parts are loaded at once, snapshots on demand.
 class Record {
  public:
-  /// Throws FileError when the file is missing, not a record, of a newer layout, or damaged.
-  explicit Record(const std::string& path);
+  /// Throws FileError when the file is missing, not a record, of a newer layout, or damaged. With
+  /// AuditPlanes::leave, the planes of result.audit have no sums.
+  explicit Record(const std::string& path, AuditPlanes audit_planes = AuditPlanes::load);
   ~Record();
   Record(const Record&) = delete;
   Record& operator=(const Record&) = delete;
@@ -65,6 +71,9 @@ class Record {
 
   /// One recorded step of one snapshot component.
   Snapshot load(const SnapshotList& list, std::size_t which) const;
+  /// Its values at the points [begin, end) only, index order [x][y][z]; V/m or A/m.
+  std::vector<double> load_part(const SnapshotList& list, std::size_t which, const Index3& begin,
+                                const Index3& end) const;
 
  private:
   struct State;
