@@ -28,34 +28,47 @@ struct RunOptions {
   bool force = false;
 };
 
-// Refuses a target that could not be written hours later, before anything is computed.
-void require_writable_target(const std::string& path, const std::string& scene_path, bool force) {
+std::string xdmf_path_of(const std::string& record_path) {
+  return record_path + ".xdmf";
+}
+
+// Says before the run what would otherwise be found when there is something to lose. What remains
+// (permissions, a folder of that name) the record's writer finds when it opens its file, which is before the
+// run too.
+void require_free_target(const std::string& path, const RunOptions& options) {
   std::error_code ignored;
   const fs::path target(path);
-  const fs::path folder = target.has_parent_path() ? target.parent_path() : fs::path(".");
-  if (!fs::is_directory(folder, ignored)) {
+  const fs::path folder = target.parent_path();
+  if (!folder.empty() && !fs::is_directory(folder, ignored)) {
     throw FileError(fmt::format("{}: the folder {} does not exist\n  next: mkdir -p '{}'", path,
                                 folder.string(), folder.string()));
   }
-  if (fs::is_directory(target, ignored)) {
-    throw FileError(fmt::format("{}: is a folder\n  next: name a file, e.g. --record {}", path,
-                                (target / "run.h5").string()));
-  }
-  if (fs::exists(target, ignored)) {
-    if (fs::equivalent(target, scene_path, ignored))
-      throw FileError(
-          fmt::format("{}: is the scene itself\n  next: give the record another name with --record", path));
-    if (!force) {
-      throw FileError(fmt::format(
-          "{}: exists already, and a record is not overwritten unasked\n"
-          "  next: --record with another name, or --force to replace it once the new one is whole",
-          path));
-    }
-  }
-  if (access(folder.c_str(), W_OK | X_OK) != 0) {
+  if (fs::equivalent(target, options.scene_path, ignored)) {
     throw FileError(
-        fmt::format("{}: no permission to write into {}\n  next: choose another folder with --record", path,
-                    folder.string()));
+        fmt::format("{}: is the scene itself\n  next: give the record another name with --record", path));
+  }
+  if (fs::exists(target, ignored) && !options.force) {
+    throw FileError(
+        fmt::format("{}: exists already, and is not overwritten unasked\n"
+                    "  next: --record with another name, or --force to replace it once the new one is whole",
+                    path));
+  }
+}
+
+// The record tells the values that were really used.
+void use_instead(Scene& scene, const std::string& key, const std::string& value) {
+  for (UsedValue& used : scene.used)
+    if (used.path == key) used = {key, value, false};
+}
+
+void apply_overrides(Scene& scene, const RunOptions& options) {
+  if (options.threads > 0) {
+    scene.problem.threads = options.threads;
+    use_instead(scene, "run.threads", std::to_string(options.threads));
+  }
+  if (!options.schedule.empty()) {
+    scene.problem.schedule = options.schedule == "plain" ? Schedule::plain : Schedule::fused;
+    use_instead(scene, "run.schedule", options.schedule);
   }
 }
 
@@ -119,18 +132,15 @@ std::string start_text(const Scene& scene, const std::string& record_path) {
                      scene.problem.last_step(), scene.problem.lattice.dt_s * 1e12, record_path);
 }
 
-std::string end_text(const RunResult& result, const Scene& scene) {
-  std::string text = "the run " + reason_text(result, scene.problem) + "\n";
-  const double rate =
-      result.march_seconds > 0.0
-          ? scene.problem.lattice.n_cells() * static_cast<double>(result.steps) / result.march_seconds
-          : 0.0;
-  text += fmt::format("built in {}, marched in {}", duration_text(result.build_seconds),
-                      duration_text(result.march_seconds));
-  if (rate > 0.0) text += fmt::format(" at {:.3g} Gcell/s", rate * 1e-9);
-  text += fmt::format(" on {} thread{}, {} schedule, {} code\n", result.threads,
-                      result.threads == 1 ? "" : "s", name_of(scene.problem.schedule), result.vector_code);
-  return text;
+std::string cost_text(const RunResult& result, const Problem& problem) {
+  std::string text = fmt::format("built in {}, marched in {}", duration_text(result.build_seconds),
+                                 duration_text(result.march_seconds));
+  if (result.march_seconds > 0.0) {
+    const double rate = problem.lattice.n_cells() * static_cast<double>(result.steps) / result.march_seconds;
+    text += fmt::format(" at {:.3g} Gcell/s", rate * 1e-9);
+  }
+  return text + fmt::format(" on {} thread{}, {} schedule, {} code\n", result.threads,
+                            result.threads == 1 ? "" : "s", name_of(problem.schedule), result.vector_code);
 }
 
 ExitCode run_scene(const RunOptions& options) {
@@ -140,10 +150,9 @@ ExitCode run_scene(const RunOptions& options) {
                                       : options.record_path;
   Scene scene = read_scene(options.scene_path);
   for (const std::string& warning : scene.warnings) warn("warning: " + warning + "\n");
-  require_writable_target(record_path, options.scene_path, options.force);
-  if (options.threads > 0) scene.problem.threads = options.threads;
-  if (!options.schedule.empty())
-    scene.problem.schedule = options.schedule == "plain" ? Schedule::plain : Schedule::fused;
+  require_free_target(record_path, options);
+  if (options.xdmf) require_free_target(xdmf_path_of(record_path), options);
+  apply_overrides(scene, options);
   require_memory(scene.problem);
 
   const ProgressStyle style = options.quiet ? ProgressStyle::none : progress_style_of_output();
@@ -162,16 +171,18 @@ ExitCode run_scene(const RunOptions& options) {
   provenance.schedule = name_of(scene.problem.schedule);
   writer.finish(result, provenance, options.xdmf);
 
-  // A run that did not end as planned says so even when it is told to be quiet.
   const ExitCode code = exit_code_of(result.reason);
+  const std::string ending = "the run " + reason_text(result, scene.problem) + "\n";
+  // A run that did not end as planned says so even when it is told to be quiet.
   if (code != ExitCode::done) {
-    warn("wanewall: the run " + reason_text(result, scene.problem) + "\n");
-    if (!options.quiet) say(fmt::format("wrote {}\n", record_path));
+    warn("wanewall: " + ending);
   } else if (!options.quiet) {
-    say(end_text(result, scene) + fmt::format("wrote {} ({})\n", record_path,
-                                              bytes_text(static_cast<double>(fs::file_size(record_path)))));
+    say(ending);
   }
-  if (!options.quiet && options.xdmf) say(fmt::format("wrote {}.xdmf\n", record_path));
+  if (!options.quiet) {
+    say(cost_text(result, scene.problem) + "wrote " + record_path + "\n");
+    if (options.xdmf) say("wrote " + xdmf_path_of(record_path) + "\n");
+  }
   return code;
 }
 
@@ -184,7 +195,7 @@ void add_run_command(CLI::App& app, Action& action) {
   command->add_option("--record", options->record_path,
                       "Record file to write; default: the scene's name with .h5, in the current folder");
   command->add_option("--threads", options->threads, "Threads; default: the scene's, else one per processor")
-      ->check(CLI::Range(1, 1024));
+      ->check(CLI::Range(1, 4096));
   command
       ->add_option("--schedule", options->schedule, "Order in which rows are visited; the result is the same")
       ->check(CLI::IsMember({"plain", "fused"}));

@@ -111,6 +111,12 @@ Outcome Child::finish() {
   return outcome;
 }
 
+Outcome Child::finish_unread() {
+  close(output_);
+  output_ = -1;
+  return finish();
+}
+
 Outcome run_program(const std::vector<std::string>& arguments, const std::string& folder) {
   return Child(arguments, folder).finish();
 }

@@ -26,6 +26,8 @@ class Child {
   void send(int signal_number);
   /// Reads the output to its end and waits for the program.
   Outcome finish();
+  /// Closes its end of the output, as when a pager is left, and waits for the program.
+  Outcome finish_unread();
 
  private:
   bool read_some();
