@@ -7,11 +7,10 @@
 namespace wanewall {
 namespace {
 
-/// First index whose z is >= value, last index whose z is <= value (+1): z is increasing.
-IndexRange covered(const std::vector<double>& z_m, const Interval& interval) {
-  const auto lo = std::lower_bound(z_m.begin(), z_m.end(), interval.lo_m);
-  const auto hi = std::upper_bound(z_m.begin(), z_m.end(), interval.hi_m);
-  return {static_cast<int>(lo - z_m.begin()), static_cast<int>(hi - z_m.begin())};
+/// Indices of the increasing z that lie in an interval.
+IndexRange covered(const double* z_m, int n, const Interval& interval) {
+  return {static_cast<int>(std::lower_bound(z_m, z_m + n, interval.lo_m) - z_m),
+          static_cast<int>(std::upper_bound(z_m, z_m + n, interval.hi_m) - z_m)};
 }
 
 /// Weights of one sample of the mean: the field's own constant and its loss.
@@ -77,24 +76,29 @@ Painter::Painter(const Lattice& lattice, const std::vector<Medium>& media, const
   }
 }
 
-void Painter::sample_line(double x_m, double y_m, const std::vector<double>& z_m, double tolerance_m,
+void Painter::sample_line(double x_m, double y_m, const double* z_m, int n, double tolerance_m,
                           std::vector<int>& medium_of_sample) const {
-  medium_of_sample.assign(z_m.size(), background_);
+  medium_of_sample.assign(static_cast<std::size_t>(n), background_);
   for (const Object& object : objects_) {
     const Interval interval = z_interval(object.shape, x_m, y_m, tolerance_m);
     if (interval.empty()) continue;
-    const IndexRange range = covered(z_m, interval);
+    const IndexRange range = covered(z_m, n, interval);
     if (range.size() > 0)
       std::fill(medium_of_sample.begin() + range.begin, medium_of_sample.begin() + range.end, object.medium);
   }
 }
 
 void Painter::row(Component c, int i, int j, std::vector<Paint>& out) const {
+  row(c, i, j, lattice_.stored(c, Axis::z), out);
+}
+
+void Painter::row(Component c, int i, int j, IndexRange k_range, std::vector<Paint>& out) const {
   const bool electric = is_electric(c);
   const bool half_z = is_half(c, Axis::z);
-  const std::vector<double>& z = half_z ? half_z_m_ : node_z_m_;
-  const std::vector<double>& z_lo = half_z ? half_z_lo_m_ : node_z_lo_m_;
-  const std::vector<double>& z_hi = half_z ? half_z_hi_m_ : node_z_hi_m_;
+  const double* z = (half_z ? half_z_m_ : node_z_m_).data() + k_range.begin;
+  const double* z_lo = (half_z ? half_z_lo_m_ : node_z_lo_m_).data() + k_range.begin;
+  const double* z_hi = (half_z ? half_z_hi_m_ : node_z_hi_m_).data() + k_range.begin;
+  const int n = k_range.size();
   const double x = lattice_.position_m(c, Axis::x, i);
   const double y = lattice_.position_m(c, Axis::y, j);
   const auto quarter = [&](Axis a, int index) {
@@ -104,17 +108,17 @@ void Painter::row(Component c, int i, int j, std::vector<Paint>& out) const {
 
   thread_local std::vector<int> middle;
   thread_local std::array<std::array<std::vector<int>, 2>, 4> corner;  // [4 lines][z below, z above]
-  sample_line(x, y, z, tolerance_m_, middle);
+  sample_line(x, y, z, n, tolerance_m_, middle);
   for (std::size_t line = 0; line < 4; ++line) {
     const double xs = x + (line & 1 ? dx : -dx), ys = y + (line & 2 ? dy : -dy);
-    sample_line(xs, ys, z_lo, 0.0, corner[line][0]);
-    sample_line(xs, ys, z_hi, 0.0, corner[line][1]);
+    sample_line(xs, ys, z_lo, n, 0.0, corner[line][0]);
+    sample_line(xs, ys, z_hi, n, 0.0, corner[line][1]);
   }
 
   // The field's own axis decides which of the eight samples follow one another along it.
   const Axis along = axis_of(c);
-  out.resize(z.size());
-  for (std::size_t k = 0; k < z.size(); ++k) {
+  out.resize(static_cast<std::size_t>(n));
+  for (std::size_t k = 0; k < out.size(); ++k) {
     const int here = middle[k];
     bool same = true;
     for (std::size_t line = 0; line < 4; ++line)

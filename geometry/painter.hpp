@@ -36,13 +36,16 @@ class Painter {
 
   /// Paints the row (i, j, all k) of a component: one entry per stored k. Thread safe.
   void row(Component c, int i, int j, std::vector<Paint>& out) const;
+  /// The same for k in [k.begin, k.end) only; out[0] is k.begin.
+  void row(Component c, int i, int j, IndexRange k, std::vector<Paint>& out) const;
 
   /// Index of the medium at a point (topmost object, else background). Points on a boundary belong to the
   /// object.
   int medium_at(const Vec3& point_m) const;
 
  private:
-  void sample_line(double x_m, double y_m, const std::vector<double>& z_m, double tolerance_m,
+  /// Medium of the topmost object at `n` increasing z on the line (x, y).
+  void sample_line(double x_m, double y_m, const double* z_m, int n, double tolerance_m,
                    std::vector<int>& medium_of_sample) const;
 
   const Lattice& lattice_;

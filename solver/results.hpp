@@ -54,7 +54,9 @@ struct PointSeries {
   std::array<std::vector<double>, 6> values;
 };
 
-/// Energy in the clear volume: sum of eps E(n)^2 / 2 + mu H(n - 1/2)^2 / 2 over its edges and faces [J].
+/// Energy in the clear volume at a step n: sum over its edges and faces of eps E(n)^2 / 2 + mu H(n + 1/2)^2 /
+/// 2, times the volume that belongs to each [J]. The half step between E and H makes it ripple; it is a
+/// gauge, not a balance.
 struct EnergySeries {
   std::vector<long> step;
   std::vector<double> joule;

@@ -1,0 +1,198 @@
+#include "solver/illumination/total_field_surface.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+#include "geometry/constants.hpp"
+
+namespace wanewall {
+namespace {
+
+std::size_t at(Axis a) {
+  return static_cast<std::size_t>(index_of(a));
+}
+
+/// Whether two rows carry the same coefficients for one component over a range of k.
+template <class Real>
+bool same(const RowMedia<Real>& a, const RowMedia<Real>& b, int component, IndexRange k) {
+  if (&a == &b) return true;
+  for (int n = k.begin; n < k.end; ++n) {
+    const UpdateCoefficients p = a.at(component, n), q = b.at(component, n);
+    if (p.decay != q.decay || p.gain != q.gain) return false;
+  }
+  return true;
+}
+
+}  // namespace
+
+template <class Real>
+IndexRange TotalFieldSurface<Real>::extent(Component c, Axis a) const {
+  const int lo = plane_wave_.box_lo[at(a)], hi = plane_wave_.box_hi[at(a)];
+  const bool periodic = lattice_.periodic[at(a)];
+  return {lo, is_half(c, a) || periodic ? hi : hi + 1};
+}
+
+template <class Real>
+TotalFieldSurface<Real>::TotalFieldSurface(const Problem& problem, const MediaRows<Real>& e_media,
+                                           const MediaRows<Real>& h_media)
+    : lattice_(problem.lattice), plane_wave_(*problem.plane_wave) {
+  const PlaneWave& wave = plane_wave_;
+  const int nz = lattice_.cells(Axis::z);
+  const Vec3 direction = propagation_of(wave);
+
+  // The media of the surface's own column. A row away from the walls, so that its coefficients are those of
+  // the media.
+  const int i0 =
+      std::clamp(wave.box_lo[0], 1, std::max(1, lattice_.cells(Axis::x) - 1)) % lattice_.cells(Axis::x);
+  const int j0 =
+      std::clamp(wave.box_lo[1], 1, std::max(1, lattice_.cells(Axis::y) - 1)) % lattice_.cells(Axis::y);
+  const RowMedia<Real>& e_column = e_media.row(i0, j0);
+  const RowMedia<Real>& h_column = h_media.row(i0, j0);
+  LayeredColumn column;
+  for (int c = 0; c < 3; ++c) {
+    e_gain_[static_cast<std::size_t>(c)].resize(static_cast<std::size_t>(nz) + 1);
+    h_gain_[static_cast<std::size_t>(c)].resize(static_cast<std::size_t>(nz) + 1);
+  }
+  for (int k = 0; k <= nz; ++k) {
+    for (int c = 0; c < 3; ++c) {
+      e_gain_[static_cast<std::size_t>(c)][static_cast<std::size_t>(k)] = e_column.at(c, k).gain;
+      h_gain_[static_cast<std::size_t>(c)][static_cast<std::size_t>(k)] = h_column.at(c, k).gain;
+    }
+    column.e.push_back(e_column.at(0, k));
+    column.h.push_back(h_column.at(0, k));
+  }
+
+  // Every row that the surface touches must be like that column.
+  for (const bool electric : {true, false}) {
+    const MediaRows<Real>& media = electric ? e_media : h_media;
+    const RowMedia<Real>& reference = electric ? e_column : h_column;
+    for (int i = std::max(wave.box_lo[0] - 1, 0); i <= wave.box_hi[0]; ++i) {
+      for (int j = std::max(wave.box_lo[1] - 1, 0); j <= wave.box_hi[1]; ++j) {
+        if (!touches(i, j, electric)) continue;
+        for (int c = 0; c < 3; ++c) {
+          const Component component =
+              electric ? wanewall::electric(static_cast<Axis>(c)) : magnetic(static_cast<Axis>(c));
+          if (!extent(component, Axis::x).contains(i) || !extent(component, Axis::y).contains(j)) continue;
+          const bool on_side =
+              (wave.box_face[0] && i == wave.box_lo[0]) || (wave.box_face[1] && i == wave.box_hi[0]) ||
+              (wave.box_face[2] && j == wave.box_lo[1]) || (wave.box_face[3] && j == wave.box_hi[1]);
+          std::vector<IndexRange> ranges;
+          if (on_side) {
+            ranges.push_back(extent(component, Axis::z));
+          } else {
+            if (wave.box_face[4]) ranges.push_back({wave.box_lo[2], wave.box_lo[2] + 1});
+            if (wave.box_face[5]) ranges.push_back({wave.box_hi[2], wave.box_hi[2] + 1});
+          }
+          for (const IndexRange& range : ranges) {
+            if (!same(media.row(i, j), reference, c, range))
+              throw ProblemError(
+                  "plane wave: an object crosses the total-field surface near x = " +
+                  std::to_string(lattice_.along(Axis::x).node_m(i)) +
+                  " m, y = " + std::to_string(lattice_.along(Axis::y).node_m(j)) +
+                  " m / allowed there: layers along z that run through all sides / make the clear volume "
+                  "larger or the object smaller");
+          }
+        }
+      }
+    }
+  }
+
+  // The medium that carries the wave in, and whether the surface sees any other.
+  const bool from_above = direction[2] < 0.0 || (direction[2] == 0.0);
+  const int entry_k = from_above ? wave.box_hi[2] - 1 : wave.box_lo[2] + 1;
+  const UpdateCoefficients e_entry = column.e[static_cast<std::size_t>(std::clamp(entry_k, 1, nz - 1))];
+  const UpdateCoefficients h_entry = column.h[static_cast<std::size_t>(std::clamp(entry_k, 0, nz - 1))];
+  if (e_entry.gain == 0.0 || h_entry.gain == 0.0)
+    throw ProblemError(
+        "plane wave: the wave would enter through a perfect conductor / let it enter through a medium");
+  if (e_entry.decay != 1.0 || h_entry.decay != 1.0)
+    throw ProblemError(
+        "plane wave: the medium through which the wave enters is lossy / allowed: no conductivity there / "
+        "use the "
+        "lossless part of the medium for the layer the wave comes through");
+  medium_.permittivity_rel = c0_m_per_s * lattice_.dt_s / e_entry.gain;
+  medium_.permeability_rel = c0_m_per_s * lattice_.dt_s / h_entry.gain;
+  bool layered = false;
+  const bool sides = wave.box_face[0] || wave.box_face[1] || wave.box_face[2] || wave.box_face[3];
+  const int first = sides || wave.box_face[4] ? std::max(wave.box_lo[2] - 1, 1) : wave.box_hi[2] - 1;
+  const int last = sides || wave.box_face[5] ? std::min(wave.box_hi[2] + 1, nz - 1) : wave.box_lo[2] + 1;
+  for (int k = first; k <= last; ++k) {
+    layered = layered || column.e[static_cast<std::size_t>(k)].gain != e_entry.gain ||
+              column.e[static_cast<std::size_t>(k)].decay != 1.0 ||
+              column.h[static_cast<std::size_t>(std::min(k, nz - 1))].gain != h_entry.gain;
+  }
+  if (!layered) {
+    wave_ = make_homogeneous_wave(lattice_, wave, medium_);
+    return;
+  }
+  if (direction[0] != 0.0 || direction[1] != 0.0)
+    throw ProblemError(
+        "plane wave: oblique incidence on layered media / allowed on layers: theta 0 deg or 180 deg / for "
+        "other angles "
+        "keep the total-field surface inside one medium");
+  const int outside = from_above ? wave.box_hi[2] + 1 : wave.box_lo[2] - 1;
+  if (column.e[static_cast<std::size_t>(std::clamp(outside, 1, nz - 1))].gain != e_entry.gain ||
+      column.e[static_cast<std::size_t>(std::clamp(outside, 1, nz - 1))].decay != 1.0)
+    throw ProblemError(
+        "plane wave: a layer ends at the entry of the total-field surface / leave two cells between them");
+  wave_ = make_layered_wave(lattice_, wave, medium_, column, problem.stop.at_s + 2.0 * lattice_.dt_s);
+}
+
+template <class Real>
+bool TotalFieldSurface<Real>::touches(int i, int j, bool electric) const {
+  const PlaneWave& w = plane_wave_;
+  const int back = electric ? 0 : 1;  // H half a cell outside the low faces
+  const auto within = [&](int index, std::size_t a) { return w.box_lo[a] <= index && index <= w.box_hi[a]; };
+  if (within(j, 1) && ((w.box_face[0] && i == w.box_lo[0] - back) || (w.box_face[1] && i == w.box_hi[0])))
+    return true;
+  if (within(i, 0) && ((w.box_face[2] && j == w.box_lo[1] - back) || (w.box_face[3] && j == w.box_hi[1])))
+    return true;
+  return (w.box_face[4] || w.box_face[5]) && within(i, 0) && within(j, 1);
+}
+
+template <class Real>
+void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electric) const {
+  thread_local std::vector<double> incident;
+  const int back = electric ? 0 : 1;
+  const Index3 row{i, j, 0};
+  for (Axis normal : all_axes) {
+    for (const bool high : {false, true}) {
+      const Side side = side_of(normal, high);
+      if (!plane_wave_.box_face[static_cast<std::size_t>(index_of(side))]) continue;
+      const int node = high ? plane_wave_.box_hi[at(normal)] : plane_wave_.box_lo[at(normal)];
+      const int target = high ? node : node - back;  // index of the component that is corrected
+      if (normal != Axis::z && row[at(normal)] != target) continue;
+      const MeshLines& lines = lattice_.along(normal);
+      const double inv_d = 1.0 / (electric ? lines.dual_m(node) : lines.cell_m(target));
+      // E half: curl_u holds -d H_v / d n, curl_v holds +d H_u / d n. H half: the same with E, and a sign
+      // from Faraday's law; total-field targets lack the incident part of their scattered neighbour,
+      // scattered-field targets have one too many of their total neighbour.
+      for (const bool first : {true, false}) {
+        const Axis u = first ? next(normal) : previous(normal);
+        const Axis v = first ? previous(normal) : next(normal);
+        const Component corrected = electric ? wanewall::electric(u) : magnetic(u);
+        const Component source = electric ? magnetic(v) : wanewall::electric(v);
+        const double sign = ((first == high) ? -1.0 : 1.0) * (electric ? 1.0 : -1.0);
+        if (normal != Axis::x && !extent(corrected, Axis::x).contains(i)) continue;
+        if (normal != Axis::y && !extent(corrected, Axis::y).contains(j)) continue;
+        IndexRange k = normal == Axis::z ? IndexRange{target, target + 1} : extent(corrected, Axis::z);
+        // The source sits half a cell beyond an E target (low side: index below), on the node beside an H
+        // target.
+        Index3 from{i, j, k.begin};
+        from[at(normal)] = electric ? (high ? node : node - 1) : node;
+        incident.resize(static_cast<std::size_t>(k.size()));
+        wave_->row(source, from[0], from[1], from[2], k.size(), incident.data());
+        const std::vector<double>& gain = (electric ? e_gain_ : h_gain_)[at(u)];
+        Real* out = own[index_of(u)];
+        for (int n = k.begin; n < k.end; ++n)
+          out[n] += static_cast<Real>(sign * gain[static_cast<std::size_t>(n)] * inv_d *
+                                      incident[static_cast<std::size_t>(n - k.begin)]);
+      }
+    }
+  }
+}
+
+template class TotalFieldSurface<float>;
+template class TotalFieldSurface<double>;
+
+}  // namespace wanewall

@@ -1,0 +1,348 @@
+#include "solver/marcher.hpp"
+
+#include <omp.h>
+
+#include <algorithm>
+#include <cmath>
+#include <exception>
+#include <stdexcept>
+
+#include "geometry/constants.hpp"
+#include "solver/flush_denormals.hpp"
+
+namespace wanewall {
+namespace {
+
+template <class Real>
+std::array<Stretch<Real>, 3> make_stretches(const Problem& problem, const RowLayout& layout, bool electric) {
+  return {make_stretch<Real>(problem, Axis::x, electric, layout.nx + 1),
+          make_stretch<Real>(problem, Axis::y, electric, layout.ny + 1),
+          make_stretch<Real>(problem, Axis::z, electric, static_cast<int>(layout.row))};
+}
+
+int cfs_cells(const Problem& problem, Side side) {
+  const Face& face = problem.face(side);
+  return face.kind == FaceKind::cfs_pml ? face.layer.cells() : 0;
+}
+
+int n_rows(const Lattice& lattice, Axis a) {
+  return lattice.cells(a) + (lattice.periodic[static_cast<std::size_t>(index_of(a))] ? 0 : 1);
+}
+
+}  // namespace
+
+template <class Real>
+Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
+    : problem_(problem),
+      layout_(make_row_layout(problem.lattice, sizeof(Real))),
+      threads_(threads),
+      kernels_(row_kernels<Real>(code)),
+      fields_(layout_),
+      e_media_(problem, layout_, true, threads),
+      h_media_(problem, layout_, false, threads),
+      e_stretch_(make_stretches<Real>(problem, layout_, true)),
+      h_stretch_(make_stretches<Real>(problem, layout_, false)),
+      z_cells_lo_(cfs_cells(problem, Side::z_lo)),
+      z_cells_hi_(cfs_cells(problem, Side::z_hi)),
+      dipoles_(problem, e_media_, h_media_),
+      rows_{n_rows(problem.lattice, Axis::x), n_rows(problem.lattice, Axis::y)},
+      slabs_(deal_planes(rows_.n_i, threads)) {
+  e_memory_ = std::make_unique<LayerMemory<Real>>(layout_, e_stretch_[0].n_slots, e_stretch_[1].n_slots,
+                                                  z_cells_lo_ + z_cells_hi_);
+  h_memory_ = std::make_unique<LayerMemory<Real>>(layout_, h_stretch_[0].n_slots, h_stretch_[1].n_slots,
+                                                  z_cells_lo_ + z_cells_hi_);
+  if (problem_.plane_wave) surface_ = std::make_unique<TotalFieldSurface<Real>>(problem_, e_media_, h_media_);
+#pragma omp parallel num_threads(threads_)
+  {
+    // The thread that works on a plane is the first to touch it. Rows past the last moving one belong to the
+    // last.
+    const auto t = static_cast<std::size_t>(omp_get_thread_num());
+    const int lo = slabs_[t],
+              hi = t + 1 == static_cast<std::size_t>(threads_) ? layout_.nx + 1 : slabs_[t + 1];
+    fields_.zero_planes(lo, hi);
+    e_memory_->zero_planes(lo, hi, e_stretch_[0].slot);
+    h_memory_->zero_planes(lo, hi, h_stretch_[0].slot);
+  }
+}
+
+template <class Real>
+std::size_t Marcher<Real>::layer_bytes() const {
+  return LayerMemory<Real>::bytes(layout_, e_stretch_[0].n_slots, e_stretch_[1].n_slots,
+                                  z_cells_lo_ + z_cells_hi_) +
+         LayerMemory<Real>::bytes(layout_, h_stretch_[0].n_slots, h_stretch_[1].n_slots,
+                                  z_cells_lo_ + z_cells_hi_);
+}
+
+/// Tangential H on the far side of a magnetic wall: the mirror image with its sign turned.
+template <class Real>
+const Real* Marcher<Real>::mirrored(Component c, int i, int j, Real* scratch) const {
+  const Real* row = fields_.row(c, i, j);
+  for (std::ptrdiff_t k = 0; k < layout_.row; ++k) scratch[k] = -row[k];
+  return scratch;
+}
+
+template <class Real>
+RowTask<Real> Marcher<Real>::task(int i, int j, bool electric) {
+  RowTask<Real> t;
+  const int nx = layout_.nx, ny = layout_.ny;
+  const auto& lattice = problem_.lattice;
+  auto& stretch = electric ? e_stretch_ : h_stretch_;
+  for (std::size_t c = 0; c < 3; ++c) {
+    t.own[c] = fields_.row(all_components[electric ? c : c + 3], i, j);
+    t.other[c] = fields_.row(all_components[electric ? c + 3 : c], i, j);
+  }
+  // Neighbour rows. Beyond an electric wall there is none; the row itself stands in, since nothing that reads
+  // it moves.
+  const auto neighbour = [&](Axis axis, int index, int n) {
+    if (electric) {
+      if (index > 0) return index - 1;
+      return lattice.periodic[static_cast<std::size_t>(index_of(axis))] ? n - 1 : 0;
+    }
+    if (index < n - 1) return index + 1;
+    if (index == n - 1) return lattice.periodic[static_cast<std::size_t>(index_of(axis))] ? 0 : n;
+    return n;
+  };
+  const int beside_i = neighbour(Axis::x, i, nx), beside_j = neighbour(Axis::y, j, ny);
+  for (std::size_t c = 0; c < 3; ++c) {
+    const Component component = all_components[electric ? c + 3 : c];
+    t.beside_x[c] = fields_.row(component, beside_i, j);
+    t.beside_y[c] = fields_.row(component, i, beside_j);
+  }
+  t.inv_x = stretch[0].inv[static_cast<std::size_t>(i)];
+  t.inv_y = stretch[1].inv[static_cast<std::size_t>(j)];
+  t.inv_z = stretch[2].inv.data();
+  auto& memory = electric ? *e_memory_ : *h_memory_;
+  if (const int slot = stretch[0].slot[static_cast<std::size_t>(i)]; slot >= 0) {
+    t.x_b = stretch[0].b[static_cast<std::size_t>(i)];
+    t.x_c = stretch[0].c[static_cast<std::size_t>(i)];
+    t.x_psi_first = memory.x(slot, j, 0);
+    t.x_psi_second = memory.x(slot, j, 1);
+  }
+  if (const int slot = stretch[1].slot[static_cast<std::size_t>(j)]; slot >= 0) {
+    t.y_b = stretch[1].b[static_cast<std::size_t>(j)];
+    t.y_c = stretch[1].c[static_cast<std::size_t>(j)];
+    t.y_psi_first = memory.y(slot, i, 0);
+    t.y_psi_second = memory.y(slot, i, 1);
+  }
+  return t;
+}
+
+template <class Real>
+void Marcher<Real>::add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j,
+                                 bool electric) {
+  if (z_cells_lo_ + z_cells_hi_ == 0) return;
+  const Stretch<Real>& stretch = (electric ? e_stretch_ : h_stretch_)[2];
+  Real* psi = (electric ? e_memory_ : h_memory_)->z(i, j);
+  const Real* gain = media.z_layer_gain.data();
+  const auto layer = [&](int begin, int n) {
+    if (n == 0) return;
+    ZLayerTask<Real> z;
+    z.begin = begin;
+    z.n = n;
+    z.b = stretch.b.data() + begin;
+    z.c = stretch.c.data() + begin;
+    z.gain_x = gain;
+    z.gain_y = gain + n;
+    z.psi_x = psi;
+    z.psi_y = psi + n;
+    (electric ? kernels_.z_layer_e : kernels_.z_layer_h)(t, z);
+    gain += 2 * n;
+    psi += 2 * n;
+  };
+  layer(electric ? 1 : 0, z_cells_lo_);
+  layer(layout_.nz - z_cells_hi_, z_cells_hi_);
+}
+
+/// At k = 0 and nz the kernel saw zero beyond the wall. Adds what a magnetic wall or the periodic image has
+/// there.
+template <class Real>
+void Marcher<Real>::add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media) {
+  const int nz = layout_.nz;
+  const FaceKind lo = kind(Side::z_lo), hi = kind(Side::z_hi);
+  const auto add = [&](int k, Real hx_beyond, Real hy_beyond, Real sign) {
+    const Real inv = t.inv_z[k];
+    t.own[0][k] += sign * static_cast<Real>(media.at(0, k).gain) * inv * hy_beyond;
+    t.own[1][k] -= sign * static_cast<Real>(media.at(1, k).gain) * inv * hx_beyond;
+  };
+  if (lo == FaceKind::magnetic_wall) add(0, -t.other[0][0], -t.other[1][0], Real(1));
+  if (hi == FaceKind::magnetic_wall) add(nz, -t.other[0][nz - 1], -t.other[1][nz - 1], Real(-1));
+  if (lo == FaceKind::periodic) {
+    add(0, t.other[0][nz - 1], t.other[1][nz - 1], Real(1));
+    t.own[0][nz] = t.own[0][0];
+    t.own[1][nz] = t.own[1][0];
+  }
+}
+
+template <class Real>
+void Marcher<Real>::advance_e(int i, int j) {
+  RowTask<Real> t = task(i, j, true);
+  thread_local AlignedArray<Real> scratch;  // mirrored rows: Hy, Hz beyond an x wall, Hx, Hz beyond a y wall
+  const auto mirror = [&](const Real** beside, std::size_t component, std::size_t slot) {
+    const auto row = static_cast<std::size_t>(layout_.row);
+    if (scratch.size() < 4 * row) scratch = AlignedArray<Real>(4 * row);
+    beside[component] = mirrored(all_components[component + 3], i, j, scratch.data() + slot * row);
+  };
+  if (i == 0 && kind(Side::x_lo) == FaceKind::magnetic_wall) {
+    mirror(t.beside_x, 1, 0);
+    mirror(t.beside_x, 2, 1);
+  }
+  if (j == 0 && kind(Side::y_lo) == FaceKind::magnetic_wall) {
+    mirror(t.beside_y, 0, 2);
+    mirror(t.beside_y, 2, 3);
+  }
+  // At the high wall the row itself holds no tangential H: it is the far side of the wall.
+  if (i == layout_.nx && kind(Side::x_hi) == FaceKind::magnetic_wall) {
+    for (std::size_t n = 1; n < 3; ++n) {
+      Real* beyond = fields_.row(all_components[n + 3], i, j);
+      mirrored(all_components[n + 3], i - 1, j, beyond);
+    }
+  }
+  if (j == layout_.ny && kind(Side::y_hi) == FaceKind::magnetic_wall) {
+    for (const std::size_t n : {std::size_t{0}, std::size_t{2}}) {
+      Real* beyond = fields_.row(all_components[n + 3], i, j);
+      mirrored(all_components[n + 3], i, j - 1, beyond);
+    }
+  }
+  const RowMedia<Real>& media = e_media_.row(i, j);
+  t.spans = media.spans.data();
+  t.n_spans = static_cast<int>(media.spans.size());
+  kernels_.advance_e(t);
+  add_z_layers(t, media, i, j, true);
+  add_z_walls(t, media);
+  if (surface_is_active_ && surface_->touches_e(i, j)) surface_->add_e(i, j, t.own);
+  if (!dipoles_.empty()) dipoles_.add_e(i, j, t.own);
+  if (captures_) captures_->take(true, i, j, fields_);
+}
+
+template <class Real>
+void Marcher<Real>::advance_h(int i, int j) {
+  RowTask<Real> t = task(i, j, false);
+  const RowMedia<Real>& media = h_media_.row(i, j);
+  t.spans = media.spans.data();
+  t.n_spans = static_cast<int>(media.spans.size());
+  kernels_.advance_h(t);
+  add_z_layers(t, media, i, j, false);
+  if (surface_is_active_ && surface_->touches_h(i, j)) surface_->add_h(i, j, t.own);
+  if (!dipoles_.empty()) dipoles_.add_h(i, j, t.own);
+  if (captures_) captures_->take(false, i, j, fields_);
+}
+
+template <class Real>
+void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
+  std::exception_ptr failure;  // an exception must not leave the parallel region
+  bool failed = false;
+  const long last = step_ + n;
+#pragma omp parallel num_threads(threads_)
+  {
+    const FlushDenormals flush;
+    const int thread = omp_get_thread_num();
+    const long first = step_ + 1;
+#pragma omp barrier
+    for (long s = first; s <= last; ++s) {
+#pragma omp single
+      {
+        surface_is_active_ = surface_ && surface_->wave().is_active(s);
+        dipoles_.prepare(s);
+        for (Recorder* recorder : recorders) recorder->before_step(s);
+      }
+      if (surface_is_active_) {
+#pragma omp for schedule(dynamic, 1)
+        for (int part = 0; part < surface_->wave().n_parts(); ++part) surface_->wave().prepare(s, part);
+      }
+      sweep(problem_.schedule, rows_, slabs_, thread, *this);
+      for (Recorder* recorder : recorders) recorder->after_step_shared(s, thread, threads_);
+#pragma omp barrier
+#pragma omp single
+      {
+        step_ = s;
+        try {
+          for (Recorder* recorder : recorders) recorder->after_step(s);
+        } catch (...) {
+          failure = std::current_exception();
+          failed = true;
+        }
+      }
+      if (failed) break;
+    }
+  }
+  if (failure) std::rethrow_exception(failure);
+}
+
+template <class Real>
+double Marcher<Real>::clear_energy_j() const {
+  const Lattice& lattice = problem_.lattice;
+  const double c_dt = c0_m_per_s * lattice.dt_s;
+  // Weight of an index along an axis: the length that belongs to it, halved on the rim of the clear volume.
+  const auto weights = [&](Component c, Axis a) {
+    std::vector<double> w(static_cast<std::size_t>(lattice.cells(a)) + 1, 0.0);
+    const IndexRange clear = lattice.clear(c, a);
+    for (int n = clear.begin; n < clear.end; ++n) {
+      const bool rim = !is_half(c, a) && (n == clear.begin || n + 1 == clear.end);
+      w[static_cast<std::size_t>(n)] =
+          is_half(c, a) ? lattice.along(a).cell_m(n) : lattice.along(a).dual_m(n) * (rim ? 0.5 : 1.0);
+    }
+    return w;
+  };
+  double total = 0.0;
+  for (Component c : all_components) {
+    const std::vector<double> wx = weights(c, Axis::x), wy = weights(c, Axis::y), wz = weights(c, Axis::z);
+    const IndexRange x = lattice.clear(c, Axis::x), y = lattice.clear(c, Axis::y),
+                     z = lattice.clear(c, Axis::z);
+    const int component = index_of(axis_of(c));
+    std::vector<double> of_plane(static_cast<std::size_t>(layout_.nx) + 1, 0.0);
+#pragma omp parallel for num_threads(threads_) schedule(static)
+    for (int i = x.begin; i < x.end; ++i) {
+      double plane = 0.0;
+      for (int j = y.begin; j < y.end; ++j) {
+        const Real* row = fields_.row(c, i, j);
+        double sum = 0.0;
+        for (const MediaSpan<Real>& span : (is_electric(c) ? e_media_ : h_media_).row(i, j).spans) {
+          const int length = span.end - span.begin;
+          const int from = std::max(span.begin, z.begin), to = std::min(span.end, z.end);
+          // eps_r (or mu_r) from the update itself.
+          const auto relative = [&](double decay, double gain) {
+            return gain == 0.0 ? 0.0 : 0.5 * c_dt * (1.0 + decay) / gain;
+          };
+          double part = 0.0;
+          if (!span.mixed) {
+            const double* w = wz.data();
+#pragma omp simd reduction(+ : part)
+            for (int k = from; k < to; ++k)
+              part += static_cast<double>(row[k]) * static_cast<double>(row[k]) * w[k];
+            part *= relative(static_cast<double>(span.decay[component]),
+                             static_cast<double>(span.gain[component]));
+          } else {
+            for (int k = from; k < to; ++k) {
+              const Real* pair = span.mixed + 2 * component * length + (k - span.begin);
+              const double value = static_cast<double>(row[k]);
+              part += relative(static_cast<double>(pair[0]), static_cast<double>(pair[length])) * value *
+                      value * wz[static_cast<std::size_t>(k)];
+            }
+          }
+          sum += part;
+        }
+        plane += sum * wy[static_cast<std::size_t>(j)];
+      }
+      of_plane[static_cast<std::size_t>(i)] = plane * wx[static_cast<std::size_t>(i)];
+    }
+    for (double plane : of_plane) total += plane;  // in order, whatever the threads
+  }
+  return 0.5 * eps0_f_per_m * total;
+}
+
+template <class Real>
+std::string Marcher<Real>::find_not_finite() const {
+  for (Component c : all_components)
+    for (int i = 0; i <= layout_.nx; ++i)
+      for (int j = 0; j <= layout_.ny; ++j)
+        for (int k = 0; k <= layout_.nz; ++k)
+          if (!std::isfinite(fields_.row(c, i, j)[k]))
+            return std::string(name_of(c)) + " in cell (" + std::to_string(i) + ", " + std::to_string(j) +
+                   ", " + std::to_string(k) + ")";
+  return {};
+}
+
+template class Marcher<float>;
+template class Marcher<double>;
+
+}  // namespace wanewall

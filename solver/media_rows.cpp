@@ -1,0 +1,251 @@
+#include "solver/media_rows.hpp"
+
+#include <omp.h>
+
+#include <algorithm>
+#include <cmath>
+#include <cstring>
+#include <string>
+
+#include "geometry/constants.hpp"
+#include "geometry/painter.hpp"
+
+namespace wanewall {
+namespace {
+
+/// Loss rate sigma/eps [1/s] that the matched slabs add, at every node and half node of an axis.
+struct SlabLoss {
+  std::vector<double> node, half;
+};
+
+SlabLoss slab_loss(const Problem& problem, Axis axis) {
+  const int n = problem.lattice.cells(axis);
+  SlabLoss loss{std::vector<double>(static_cast<std::size_t>(n) + 1, 0.0),
+                std::vector<double>(static_cast<std::size_t>(n), 0.0)};
+  for (const bool high : {false, true}) {
+    const Side side = side_of(axis, high);
+    const Face& face = problem.face(side);
+    if (face.kind != FaceKind::matched_slab) continue;
+    const int cells = face.layer.cells();
+    for (int d = 0; d < cells; ++d) {
+      const auto node = static_cast<std::size_t>(high ? n - cells + d : cells - d);
+      const auto half = static_cast<std::size_t>(high ? n - cells + d : cells - 1 - d);
+      loss.node[node] += face.layer.sigma_e_s_per_m[static_cast<std::size_t>(d)] / eps0_f_per_m;
+      loss.half[half] += face.layer.sigma_h_s_per_m[static_cast<std::size_t>(d)] / eps0_f_per_m;
+    }
+  }
+  return loss;
+}
+
+/// Whether tangential E is held at zero on this side's outer wall.
+bool wall_is_electric(const Problem& problem, Side side) {
+  const FaceKind kind = problem.face(side).kind;
+  return kind == FaceKind::electric_wall || absorbs(kind);
+}
+
+/// Update coefficients of whole rows before compression.
+class RowPainter {
+ public:
+  RowPainter(const Problem& problem, bool electric)
+      : problem_(problem),
+        lattice_(problem.lattice),
+        electric_(electric),
+        painter_(problem.lattice, problem.media, problem.objects, problem.background),
+        loss_{slab_loss(problem, Axis::x), slab_loss(problem, Axis::y), slab_loss(problem, Axis::z)} {}
+
+  /// Fills decay and gain of one component; `out` has one entry per k = 0..nz.
+  void paint(int component, int i, int j, std::vector<UpdateCoefficients>& out) const {
+    const Component c =
+        electric_ ? electric(static_cast<Axis>(component)) : magnetic(static_cast<Axis>(component));
+    const auto nodes = static_cast<std::size_t>(lattice_.cells(Axis::z)) + 1;
+    out.assign(nodes, UpdateCoefficients{});
+    if (!moves(c, Axis::x, i) || !moves(c, Axis::y, j)) return;
+    thread_local std::vector<Paint> paint;
+    painter_.row(c, i, j, paint);
+    const double side_loss = loss(c, Axis::x, i) + loss(c, Axis::y, j);
+    const double vacuum = electric_ ? eps0_f_per_m : mu0_h_per_m;
+    for (std::size_t k = 0; k < paint.size(); ++k) {
+      if (paint[k].perfect || !moves(c, Axis::z, static_cast<int>(k))) continue;
+      const double rate =
+          paint[k].loss / (vacuum * paint[k].relative) + side_loss + loss(c, Axis::z, static_cast<int>(k));
+      out[k] = update_coefficients(paint[k].relative, rate, lattice_.dt_s);
+    }
+  }
+
+ private:
+  double loss(Component c, Axis a, int index) const {
+    const SlabLoss& along = loss_[static_cast<std::size_t>(index_of(a))];
+    return (is_half(c, a) ? along.half : along.node)[static_cast<std::size_t>(index)];
+  }
+
+  /// False for indices that do not exist, are images on a periodic axis, or lie on an electric wall with E in
+  /// it.
+  bool moves(Component c, Axis a, int index) const {
+    const int n = lattice_.cells(a);
+    if (is_half(c, a)) return index < n;
+    if (lattice_.periodic[static_cast<std::size_t>(index_of(a))]) return index < n;
+    if (!electric_) return true;
+    if (index == 0) return !wall_is_electric(problem_, side_of(a, false));
+    if (index == n) return !wall_is_electric(problem_, side_of(a, true));
+    return true;
+  }
+
+  const Problem& problem_;
+  const Lattice& lattice_;
+  bool electric_;
+  Painter painter_;
+  std::array<SlabLoss, 3> loss_;
+};
+
+template <class Real>
+struct Pair {
+  Real decay, gain;
+  bool operator==(const Pair&) const = default;
+};
+
+/// Cuts a row into spans of whole cache lines; lines that hold one value per component and follow one another
+/// join.
+template <class Real>
+RowMedia<Real> compress(const std::array<std::vector<Pair<Real>>, 3>& values) {
+  constexpr int line = static_cast<int>(cache_line_bytes / sizeof(Real));
+  const int length = static_cast<int>(values[0].size());
+  RowMedia<Real> media;
+  std::vector<std::size_t> mixed_at;
+  std::vector<Real> mixed;
+  for (int begin = 0; begin < length; begin += line) {
+    MediaSpan<Real> span;
+    span.begin = begin;
+    span.end = begin + line;
+    bool uniform = true, still = true;
+    for (std::size_t c = 0; c < 3; ++c) {
+      const Pair<Real>* first = &values[c][static_cast<std::size_t>(begin)];
+      uniform = uniform && std::all_of(first, first + line, [&](const Pair<Real>& p) { return p == *first; });
+      still = still && std::all_of(first, first + line,
+                                   [](const Pair<Real>& p) { return p.gain == 0 && p.decay == 0; });
+      span.decay[c] = first->decay;
+      span.gain[c] = first->gain;
+    }
+    if (still) continue;
+    if (!media.spans.empty() && media.spans.back().end == begin) {
+      MediaSpan<Real>& last = media.spans.back();
+      const bool last_uniform = mixed_at.back() == std::string::npos;
+      if ((!uniform && !last_uniform) ||
+          (uniform && last_uniform && std::equal(last.decay, last.decay + 3, span.decay) &&
+           std::equal(last.gain, last.gain + 3, span.gain))) {
+        last.end = span.end;
+        continue;
+      }
+    }
+    media.spans.push_back(span);
+    mixed_at.push_back(uniform ? std::string::npos : 0);
+  }
+  for (std::size_t n = 0; n < media.spans.size(); ++n) {
+    if (mixed_at[n] == std::string::npos) continue;
+    mixed_at[n] = mixed.size();
+    const MediaSpan<Real>& span = media.spans[n];
+    for (const auto& component : values) {
+      for (const bool gain : {false, true}) {
+        for (int k = span.begin; k < span.end; ++k) {
+          const Pair<Real>& p = component[static_cast<std::size_t>(k)];
+          mixed.push_back(gain ? p.gain : p.decay);
+        }
+      }
+    }
+  }
+  media.mixed = AlignedArray<Real>(mixed.size());
+  std::copy(mixed.begin(), mixed.end(), media.mixed.data());
+  for (std::size_t n = 0; n < media.spans.size(); ++n) {
+    if (mixed_at[n] != std::string::npos) media.spans[n].mixed = media.mixed.data() + mixed_at[n];
+  }
+  return media;
+}
+
+}  // namespace
+
+UpdateCoefficients update_coefficients(double relative, double loss_rate_per_s, double dt_s) {
+  const double s = 0.5 * loss_rate_per_s * dt_s;
+  return {(1.0 - s) / (1.0 + s), c0_m_per_s * dt_s / (relative * (1.0 + s))};
+}
+
+template <class Real>
+UpdateCoefficients RowMedia<Real>::at(int component, int k) const {
+  for (const MediaSpan<Real>& span : spans) {
+    if (k < span.begin || k >= span.end) continue;
+    if (!span.mixed) return {span.decay[component], span.gain[component]};
+    const int length = span.end - span.begin;
+    const Real* decay = span.mixed + 2 * component * length + (k - span.begin);
+    return {decay[0], decay[length]};
+  }
+  return {};
+}
+
+template <class Real>
+MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool electric, int threads)
+    : ny_(layout.ny),
+      rows_(static_cast<std::size_t>(layout.nx + 1) * static_cast<std::size_t>(layout.ny + 1)),
+      pools_(static_cast<std::size_t>(threads)) {
+  const RowPainter painter(problem, electric);
+  const int n_lo = problem.face(Side::z_lo).kind == FaceKind::cfs_pml ? problem.lattice.shell(Side::z_lo) : 0;
+  const int n_hi = problem.face(Side::z_hi).kind == FaceKind::cfs_pml ? problem.lattice.shell(Side::z_hi) : 0;
+#pragma omp parallel num_threads(threads)
+  {
+    auto& pool = pools_[static_cast<std::size_t>(omp_get_thread_num())];
+    std::unordered_map<std::string, const RowMedia<Real>*> known;
+    std::vector<UpdateCoefficients> painted;
+    std::array<std::vector<Pair<Real>>, 3> values;
+    for (auto& component : values) component.resize(static_cast<std::size_t>(layout.row));
+#pragma omp for schedule(static)
+    for (int i = 0; i <= layout.nx; ++i) {
+      for (int j = 0; j <= layout.ny; ++j) {
+        std::string key;
+        for (std::size_t c = 0; c < 3; ++c) {
+          painter.paint(static_cast<int>(c), i, j, painted);
+          std::fill(values[c].begin(), values[c].end(), Pair<Real>{0, 0});
+          for (std::size_t k = 0; k < painted.size(); ++k) {
+            values[c][k] = {static_cast<Real>(painted[k].decay), static_cast<Real>(painted[k].gain)};
+            if (k == 0 || !(values[c][k] == values[c][k - 1])) {  // run-length key
+              const auto at = static_cast<int>(k);
+              key.append(reinterpret_cast<const char*>(&at), sizeof at);
+              key.append(reinterpret_cast<const char*>(&values[c][k]), sizeof(Pair<Real>));
+            }
+          }
+          key.push_back('|');
+        }
+        auto& slot = known[key];
+        if (!slot) {
+          pool.push_back(compress(values));
+          RowMedia<Real>& media = pool.back();
+          const auto gains = [&](int begin, int n) {
+            for (std::size_t c = 0; c < 2; ++c) {
+              for (int k = begin; k < begin + n; ++k)
+                media.z_layer_gain.push_back(values[c][static_cast<std::size_t>(k)].gain);
+            }
+          };
+          gains(electric ? 1 : 0, n_lo);
+          gains(layout.nz - n_hi, n_hi);
+          slot = &media;
+        }
+        rows_[static_cast<std::size_t>(i) * static_cast<std::size_t>(ny_ + 1) + static_cast<std::size_t>(j)] =
+            slot;
+      }
+    }
+  }
+}
+
+template <class Real>
+std::size_t MediaRows<Real>::bytes() const {
+  std::size_t sum = rows_.size() * sizeof(rows_[0]);
+  for (const auto& pool : pools_) {
+    for (const auto& media : pool)
+      sum += sizeof media + media.spans.size() * sizeof(MediaSpan<Real>) + media.mixed.size() * sizeof(Real) +
+             media.z_layer_gain.size() * sizeof(Real);
+  }
+  return sum;
+}
+
+template struct RowMedia<float>;
+template struct RowMedia<double>;
+template class MediaRows<float>;
+template class MediaRows<double>;
+
+}  // namespace wanewall

@@ -1,0 +1,246 @@
+#include "solver/recorders/audit.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+#include "geometry/constants.hpp"
+
+namespace wanewall {
+namespace {
+
+/// Node of plane m, and half index of half plane m, on a side (see AuditFace).
+int plane_node(const Lattice& lattice, Side side, int m) {
+  return is_high(side) ? lattice.clear_node(side) - 2 + m : lattice.clear_node(side) + 2 - m;
+}
+int half_plane_index(const Lattice& lattice, Side side, int m) {
+  return is_high(side) ? lattice.clear_node(side) - 2 + m : lattice.clear_node(side) + 1 - m;
+}
+
+std::array<Axis, 2> tangential_axes(Side side) {
+  switch (axis_of(side)) {
+    case Axis::x:
+      return {Axis::y, Axis::z};
+    case Axis::y:
+      return {Axis::x, Axis::z};
+    default:
+      return {Axis::x, Axis::y};
+  }
+}
+
+AuditPlane make_plane(const Lattice& lattice, Side side, Component c, int m) {
+  const Axis normal = axis_of(side);
+  AuditPlane plane;
+  plane.component = c;
+  plane.normal_index = is_half(c, normal) ? half_plane_index(lattice, side, m) : plane_node(lattice, side, m);
+  plane.normal_m = lattice.position_m(c, normal, plane.normal_index);
+  const auto [first, second] = tangential_axes(side);
+  plane.shape = {lattice.stored(c, first).size(), lattice.stored(c, second).size()};
+  return plane;
+}
+
+/// Does the paint of tangential E on planes 0..2 equal that at the middle of the plane (uniform), or that of
+/// the same z (layered)? Looks at the clear cross-section without its rim, where walls have their own rules.
+void classify(const Problem& problem, const Painter& painter, Side side, AuditFace& face) {
+  const Lattice& lattice = problem.lattice;
+  const Axis normal = axis_of(side);
+  const auto tangential = tangential_axes(side);
+  face.is_uniform = face.is_layered = true;
+  std::vector<Paint> row, reference_row;
+  for (Axis along : tangential) {
+    const Component c = electric(along);
+    const int node_0 = plane_node(lattice, side, 0), node_2 = plane_node(lattice, side, 2);
+    const auto range = [&](Axis a) {
+      if (a == normal) return IndexRange{std::min(node_0, node_2), std::max(node_0, node_2) + 1};
+      const IndexRange clear = lattice.clear(c, a);
+      return is_half(c, a) || clear.size() < 3 ? clear : IndexRange{clear.begin + 1, clear.end - 1};
+    };
+    const IndexRange x = range(Axis::x), y = range(Axis::y), z = range(Axis::z);
+    for (int i = x.begin; i < x.end; ++i) {
+      for (int j = y.begin; j < y.end; ++j) {
+        painter.row(c, i, j, z, row);
+        if (i == x.begin && j == y.begin) reference_row = row;
+        const Paint& middle = reference_row[reference_row.size() / 2];
+        for (std::size_t k = 0; k < row.size(); ++k) {
+          face.is_uniform = face.is_uniform && row[k] == middle;
+          face.is_layered = face.is_layered && row[k] == reference_row[k];
+        }
+      }
+    }
+  }
+  if (normal == Axis::z) face.is_layered = face.is_uniform;
+}
+
+}  // namespace
+
+int audit_sample_every(const Problem& problem) {
+  const AuditRequest& audit = problem.recording.audit;
+  if (audit.sample_every > 0) return audit.sample_every;
+  double end_hz = 0.0;
+  const auto look_at = [&](const Pulse& pulse) {
+    end_hz = std::max(end_hz, spectrum_end_hz(pulse, audit_alias_level));
+  };
+  if (problem.plane_wave) look_at(problem.plane_wave->pulse);
+  for (const Dipole& dipole : problem.dipoles) look_at(dipole.pulse);
+  const double highest = *std::max_element(audit.frequencies_hz.begin(), audit.frequencies_hz.end());
+  const double limit = 1.0 / (problem.lattice.dt_s * (highest + std::max(end_hz, highest)));
+  return std::max(1, static_cast<int>(std::floor(limit)));
+}
+
+AuditFace audit_face(const Problem& problem, const Painter& painter, Side side) {
+  const Lattice& lattice = problem.lattice;
+  const Axis normal = axis_of(side);
+  if (lattice.clear_cells(normal).size() < 4)
+    throw ProblemError(
+        "shell audit of " + std::string(name_of(side)) +
+        ": the clear volume must be at least 4 cells deep in front of the face / make it larger or leave "
+        "the face out of the audit");
+  AuditFace face;
+  face.side = side;
+  classify(problem, painter, side, face);
+  const auto [first, second] = tangential_axes(side);
+  Vec3 middle{};
+  for (Axis a : all_axes) {
+    const IndexRange clear = lattice.clear_cells(a);
+    middle[static_cast<std::size_t>(index_of(a))] =
+        0.5 * (lattice.along(a).node_m(clear.begin) + lattice.along(a).node_m(clear.end));
+  }
+  middle[static_cast<std::size_t>(index_of(normal))] =
+      lattice.along(normal).node_m(plane_node(lattice, side, 0));
+  const Medium& medium = problem.media[static_cast<std::size_t>(painter.medium_at(middle))];
+  face.permittivity_rel = medium.permittivity_rel;
+  face.permeability_rel = medium.permeability_rel;
+  face.conductivity_s_per_m = medium.conductivity_s_per_m;
+
+  if (face.is_layered && !face.is_uniform) {
+    const Axis other = normal == Axis::x ? Axis::y : Axis::x;
+    for (int m = 0; m < 3; ++m) face.planes.push_back(make_plane(lattice, side, Component::ez, m));
+    for (int m = -1; m < 2; ++m) face.planes.push_back(make_plane(lattice, side, Component::hz, m));
+    face.planes.push_back(make_plane(lattice, side, electric(other), 0));
+    face.planes.push_back(make_plane(lattice, side, magnetic(other), 0));
+  } else {
+    for (Axis along : {first, second})
+      for (int m = 0; m < 3; ++m) face.planes.push_back(make_plane(lattice, side, electric(along), m));
+    for (Axis along : {first, second}) face.planes.push_back(make_plane(lattice, side, magnetic(along), 0));
+  }
+  return face;
+}
+
+template <class Real>
+AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captures)
+    : dt_s_(problem.lattice.dt_s), captures_(captures) {
+  const AuditRequest& request = problem.recording.audit;
+  record_.frequencies_hz = request.frequencies_hz;
+  if (request.frequencies_hz.empty()) return;
+  record_.sample_every = audit_sample_every(problem);
+  const Painter painter(problem.lattice, problem.media, problem.objects, problem.background);
+  for (Side side : all_sides) {
+    if (!request.faces[static_cast<std::size_t>(index_of(side))]) continue;
+    record_.faces.push_back(audit_face(problem, painter, side));
+    const AuditFace& face = record_.faces.back();
+    const auto normal = static_cast<std::size_t>(index_of(axis_of(side)));
+    const auto tangential = tangential_axes(side);
+    for (std::size_t p = 0; p < face.planes.size(); ++p) {
+      CaptureBox box;
+      box.component = face.planes[p].component;
+      box.first[normal] = face.planes[p].normal_index;
+      for (std::size_t t = 0; t < 2; ++t)
+        box.count[static_cast<std::size_t>(index_of(tangential[t]))] = face.planes[p].shape[t];
+      Plane plane{record_.faces.size() - 1, p, captures.add(box), box.size(), {}, {}, {}};
+      plane.block.resize(plane.size * audit_block_samples);
+      plane.sum_real.assign(plane.size * record_.frequencies_hz.size(), 0.0);
+      plane.sum_imag.assign(plane.size * record_.frequencies_hz.size(), 0.0);
+      planes_.push_back(std::move(plane));
+    }
+  }
+}
+
+template <class Real>
+void AuditRecorder<Real>::before_step(long step) {
+  for (Plane& plane : planes_)
+    captures_.aim(plane.capture, samples(step)
+                                     ? plane.block.data() + plane.size * static_cast<std::size_t>(in_block_)
+                                     : nullptr);
+}
+
+template <class Real>
+void AuditRecorder<Real>::add_block(Plane& plane, std::size_t begin, std::size_t end, int n_samples) {
+  const bool electric = is_electric(record_.faces[plane.face].planes[plane.plane].component);
+  // Short pieces, so that a piece of all samples stays in cache while the frequencies take turns.
+  constexpr std::size_t piece = 512;
+  for (std::size_t from = begin; from < end; from += piece) {
+    const std::size_t n = std::min(piece, end - from);
+    for (std::size_t f = 0; f < record_.frequencies_hz.size(); ++f) {
+      const double omega = 2.0 * pi * record_.frequencies_hz[f];
+      double* real = plane.sum_real.data() + f * plane.size + from;
+      double* imag = plane.sum_imag.data() + f * plane.size + from;
+      for (int s = 0; s < n_samples; ++s) {
+        const long step = block_step_[static_cast<std::size_t>(s)];
+        const double t = electric ? time_of_e_s(step, dt_s_) : time_of_h_s(step, dt_s_);
+        const double c = std::cos(omega * t), minus_s = -std::sin(omega * t);
+        const Real* sample = plane.block.data() + plane.size * static_cast<std::size_t>(s) + from;
+#pragma omp simd
+        for (std::size_t m = 0; m < n; ++m) {
+          const auto value = static_cast<double>(sample[m]);
+          real[m] += c * value;
+          imag[m] += minus_s * value;
+        }
+      }
+    }
+  }
+}
+
+template <class Real>
+void AuditRecorder<Real>::after_step_shared(long step, int thread, int threads) {
+  if (!samples(step) || in_block_ + 1 < audit_block_samples) return;
+  // The step just taken is the block's last; every thread writes the same number.
+  if (thread == 0) block_step_[audit_block_samples - 1] = step;
+#pragma omp barrier
+  for (Plane& plane : planes_) {
+    const auto t = static_cast<std::size_t>(thread), n = static_cast<std::size_t>(threads);
+    add_block(plane, plane.size * t / n, plane.size * (t + 1) / n, audit_block_samples);
+  }
+}
+
+template <class Real>
+void AuditRecorder<Real>::after_step(long step) {
+  if (!samples(step)) return;
+  block_step_[static_cast<std::size_t>(in_block_)] = step;
+  in_block_ = (in_block_ + 1) % audit_block_samples;
+}
+
+template <class Real>
+AuditRecord AuditRecorder<Real>::finish() {
+  for (Plane& plane : planes_) {
+    add_block(plane, 0, plane.size, in_block_);
+    AuditPlane& out = record_.faces[plane.face].planes[plane.plane];
+    const double unit = record_.sample_every * dt_s_ * (is_electric(out.component) ? 1.0 : 1.0 / eta0_ohm);
+    out.sums.resize(plane.sum_real.size());
+    for (std::size_t n = 0; n < out.sums.size(); ++n)
+      out.sums[n] = {static_cast<float>(unit * plane.sum_real[n]),
+                     static_cast<float>(unit * plane.sum_imag[n])};
+    plane = Plane{};
+  }
+  planes_.clear();
+  return std::move(record_);
+}
+
+template <class Real>
+double AuditRecorder<Real>::bytes(const Problem& problem) {
+  const AuditRequest& request = problem.recording.audit;
+  if (request.frequencies_hz.empty()) return 0.0;
+  double positions = 0.0;
+  const Painter painter(problem.lattice, problem.media, problem.objects, problem.background);
+  for (Side side : all_sides) {
+    if (!request.faces[static_cast<std::size_t>(index_of(side))]) continue;
+    for (const AuditPlane& plane : audit_face(problem, painter, side).planes)
+      positions += static_cast<double>(plane.shape[0]) * plane.shape[1];
+  }
+  const double per_position = audit_block_samples * sizeof(Real) +
+                              2.0 * sizeof(double) * static_cast<double>(request.frequencies_hz.size());
+  return positions * per_position;
+}
+
+template class AuditRecorder<float>;
+template class AuditRecorder<double>;
+
+}  // namespace wanewall

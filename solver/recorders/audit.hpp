@@ -1,0 +1,58 @@
+// The shell audit: running DFT of the fields on planes in front of each face, over the whole cross-section.
+//
+// Samples are taken every Q steps. Q is the largest number for which no frequency above the pulse's end (1e-8
+// of its peak) folds onto one below the audit's highest:  1/(Q dt) - f_audit >= f_end. Samples of a block are
+// kept and added as one small matrix product, in double; the order of summation does not depend on the number
+// of threads.
+#pragma once
+
+#include <complex>
+
+#include "geometry/painter.hpp"
+#include "solver/recorders/captures.hpp"
+#include "solver/recorders/recorder.hpp"
+#include "solver/results.hpp"
+
+namespace wanewall {
+
+inline constexpr int audit_block_samples = 16;
+inline constexpr double audit_alias_level = 1e-8;
+
+/// Q for a problem: as asked, or from the spectra of its pulses.
+int audit_sample_every(const Problem& problem);
+
+/// The planes that a problem's audit records on one face, without sums, and what the face's cross-section is
+/// made of.
+AuditFace audit_face(const Problem& problem, const Painter& painter, Side side);
+
+template <class Real>
+class AuditRecorder : public Recorder {
+ public:
+  AuditRecorder(const Problem& problem, Captures<Real>& captures);
+  void before_step(long step) override;
+  void after_step_shared(long step, int thread, int threads) override;
+  void after_step(long step) override;
+  AuditRecord finish();
+  /// Bytes of buffers and sums.
+  static double bytes(const Problem& problem);
+
+ private:
+  struct Plane {
+    std::size_t face, plane;
+    int capture;
+    std::size_t size;
+    std::vector<Real> block;                 ///< [sample][position]
+    std::vector<double> sum_real, sum_imag;  ///< [frequency][position]
+  };
+  bool samples(long step) const { return step % record_.sample_every == 0; }
+  void add_block(Plane& plane, std::size_t begin, std::size_t end, int n_samples);
+
+  AuditRecord record_;
+  double dt_s_;
+  Captures<Real>& captures_;
+  std::vector<Plane> planes_;
+  int in_block_ = 0;
+  std::array<long, audit_block_samples> block_step_{};
+};
+
+}  // namespace wanewall

@@ -1,0 +1,88 @@
+#include "solver/recorders/captures.hpp"
+
+#include <stdexcept>
+
+namespace wanewall {
+namespace {
+
+/// The row or value that holds an index: on a periodic axis the last node is the first.
+int source_index(const Lattice& lattice, Component c, Axis a, int index) {
+  const bool image =
+      lattice.periodic[static_cast<std::size_t>(index_of(a))] && !is_half(c, a) && index == lattice.cells(a);
+  return image ? 0 : index;
+}
+
+}  // namespace
+
+template <class Real>
+int Captures<Real>::add(const CaptureBox& box) {
+  for (Axis a : all_axes) {
+    const auto at = static_cast<std::size_t>(index_of(a));
+    const IndexRange stored = lattice_.stored(box.component, a);
+    const int last = box.first[at] + (box.count[at] - 1) * box.stride;
+    if (box.count[at] < 1 || !stored.contains(box.first[at]) || !stored.contains(last))
+      throw std::logic_error("a capture reaches beyond the lattice");
+  }
+  boxes_.push_back(box);
+  targets_.push_back(nullptr);
+  return static_cast<int>(boxes_.size()) - 1;
+}
+
+template <class Real>
+void Captures<Real>::freeze() {
+  n_j_ = static_cast<std::size_t>(lattice_.cells(Axis::y)) + 1;
+  const std::size_t rows = (static_cast<std::size_t>(lattice_.cells(Axis::x)) + 1) * n_j_;
+  for (const bool electric : {true, false}) {
+    std::vector<std::uint32_t>& start = electric ? e_start_ : h_start_;
+    std::vector<Entry>& entries = electric ? e_entries_ : h_entries_;
+    start.assign(rows + 1, 0);
+    // Two passes: count, then fill.
+    std::vector<std::uint32_t> fill;
+    for (const bool counting : {true, false}) {
+      for (std::size_t b = 0; b < boxes_.size(); ++b) {
+        const CaptureBox& box = boxes_[b];
+        if (is_electric(box.component) != electric) continue;
+        for (int x = 0; x < box.count[0]; ++x) {
+          const int i = source_index(lattice_, box.component, Axis::x, box.first[0] + x * box.stride);
+          for (int y = 0; y < box.count[1]; ++y) {
+            const int j = source_index(lattice_, box.component, Axis::y, box.first[1] + y * box.stride);
+            const std::size_t row = static_cast<std::size_t>(i) * n_j_ + static_cast<std::size_t>(j);
+            if (counting)
+              ++start[row + 1];
+            else
+              entries[fill[row]++] = {static_cast<std::uint32_t>(b),
+                                      static_cast<std::uint32_t>(x * box.count[1] + y)};
+          }
+        }
+      }
+      if (counting) {
+        for (std::size_t row = 0; row < rows; ++row) start[row + 1] += start[row];
+        entries.resize(start[rows]);
+        fill.assign(start.begin(), start.end());
+      }
+    }
+  }
+}
+
+template <class Real>
+void Captures<Real>::copy(const Entry& entry, int i, int j, const Fields<Real>& fields, Real* target) const {
+  const CaptureBox& box = boxes_[entry.box];
+  const Real* row = fields.row(box.component, i, j);
+  Real* out = target + static_cast<std::size_t>(entry.row_in_box) * static_cast<std::size_t>(box.count[2]);
+  const bool has_image = lattice_.periodic[2] && !is_half(box.component, Axis::z);
+  for (int z = 0; z < box.count[2]; ++z) {
+    const int k = box.first[2] + z * box.stride;
+    out[z] = row[has_image && k == lattice_.cells(Axis::z) ? 0 : k];
+  }
+}
+
+template <class Real>
+std::size_t Captures<Real>::bytes() const {
+  return (e_entries_.size() + h_entries_.size()) * sizeof(Entry) +
+         (e_start_.size() + h_start_.size()) * sizeof(std::uint32_t);
+}
+
+template class Captures<float>;
+template class Captures<double>;
+
+}  // namespace wanewall

@@ -1,0 +1,33 @@
+#include "solver/row_kernels.hpp"
+
+namespace wanewall {
+
+RowKernels<float> row_kernels_base_float();
+RowKernels<float> row_kernels_avx2_float();
+RowKernels<float> row_kernels_avx512_float();
+RowKernels<double> row_kernels_base_double();
+RowKernels<double> row_kernels_avx2_double();
+RowKernels<double> row_kernels_avx512_double();
+
+VectorCode best_vector_code() {
+  if (__builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512vl") &&
+      __builtin_cpu_supports("avx512dq") && __builtin_cpu_supports("avx512bw"))
+    return VectorCode::avx512;
+  return __builtin_cpu_supports("avx2") ? VectorCode::avx2 : VectorCode::baseline;
+}
+
+template <>
+const RowKernels<float>& row_kernels(VectorCode code) {
+  static const RowKernels<float> table[3]{row_kernels_base_float(), row_kernels_avx2_float(),
+                                          row_kernels_avx512_float()};
+  return table[static_cast<int>(code)];
+}
+
+template <>
+const RowKernels<double>& row_kernels(VectorCode code) {
+  static const RowKernels<double> table[3]{row_kernels_base_double(), row_kernels_avx2_double(),
+                                           row_kernels_avx512_double()};
+  return table[static_cast<int>(code)];
+}
+
+}  // namespace wanewall

@@ -1,0 +1,173 @@
+// Included by row_kernels_*.cpp with WANEWALL_VECTOR_BYTES and WANEWALL_VECTOR_NAMESPACE set. Rows are
+// padded, so there is no remainder: every span is a whole number of cache lines and every store is aligned.
+#include "solver/row_kernels.hpp"
+
+namespace wanewall {
+namespace WANEWALL_VECTOR_NAMESPACE {
+
+template <class Real>
+struct Vector {
+  static constexpr int width = WANEWALL_VECTOR_BYTES / static_cast<int>(sizeof(Real));
+  typedef Real Any __attribute__((vector_size(WANEWALL_VECTOR_BYTES), aligned(sizeof(Real)), may_alias));
+  typedef Real Aligned __attribute__((vector_size(WANEWALL_VECTOR_BYTES), may_alias));
+  static Aligned load(const Real* p) { return *reinterpret_cast<const Aligned*>(p); }
+  static Aligned load_any(const Real* p) { return *reinterpret_cast<const Any*>(p); }
+  static void store(Real* p, Aligned v) { *reinterpret_cast<Aligned*>(p) = v; }
+};
+
+/// psi and the stretched difference of one component along one axis.
+template <class Real, bool layer>
+inline typename Vector<Real>::Aligned stretched(typename Vector<Real>::Aligned difference, Real inv, Real b,
+                                                Real c, Real* psi) {
+  using V = Vector<Real>;
+  if constexpr (layer) {
+    const auto memory = b * V::load(psi) + c * difference;
+    V::store(psi, memory);
+    return inv * difference + memory;
+  } else {
+    return inv * difference;
+  }
+}
+
+template <class Real, bool mixed>
+inline void move(Real* own, int k, int in_span, int length, const MediaSpan<Real>& span, int component,
+                 typename Vector<Real>::Aligned curl) {
+  using V = Vector<Real>;
+  if constexpr (mixed) {
+    const Real* decay = span.mixed + (2 * component) * length + in_span;
+    const Real* gain = span.mixed + (2 * component + 1) * length + in_span;
+    V::store(own + k, V::load(decay) * V::load(own + k) + V::load(gain) * curl);
+  } else {
+    V::store(own + k, span.decay[component] * V::load(own + k) + span.gain[component] * curl);
+  }
+}
+
+template <class Real, bool layer_x, bool layer_y, bool mixed>
+void span_e(const RowTask<Real>& t, const MediaSpan<Real>& span) {
+  using V = Vector<Real>;
+  const int length = span.end - span.begin;
+  const Real *hx_row = t.other[0], *hy_row = t.other[1], *hz_row = t.other[2];
+  const Real *hy_im = t.beside_x[1], *hz_im = t.beside_x[2], *hx_jm = t.beside_y[0], *hz_jm = t.beside_y[2];
+  for (int k = span.begin; k < span.end; k += V::width) {
+    const auto hx = V::load(hx_row + k), hy = V::load(hy_row + k), hz = V::load(hz_row + k);
+    const auto inv_z = V::load(t.inv_z + k);
+    const auto dy_hz =
+        stretched<Real, layer_y>(hz - V::load(hz_jm + k), t.inv_y, t.y_b, t.y_c, t.y_psi_second + k);
+    const auto dy_hx =
+        stretched<Real, layer_y>(hx - V::load(hx_jm + k), t.inv_y, t.y_b, t.y_c, t.y_psi_first + k);
+    const auto dx_hy =
+        stretched<Real, layer_x>(hy - V::load(hy_im + k), t.inv_x, t.x_b, t.x_c, t.x_psi_second + k);
+    const auto dx_hz =
+        stretched<Real, layer_x>(hz - V::load(hz_im + k), t.inv_x, t.x_b, t.x_c, t.x_psi_first + k);
+    const auto dz_hy = inv_z * (hy - V::load_any(hy_row + k - 1));
+    const auto dz_hx = inv_z * (hx - V::load_any(hx_row + k - 1));
+    const int s = k - span.begin;
+    move<Real, mixed>(t.own[0], k, s, length, span, 0, dy_hz - dz_hy);
+    move<Real, mixed>(t.own[1], k, s, length, span, 1, dz_hx - dx_hz);
+    move<Real, mixed>(t.own[2], k, s, length, span, 2, dx_hy - dy_hx);
+  }
+}
+
+template <class Real, bool layer_x, bool layer_y, bool mixed>
+void span_h(const RowTask<Real>& t, const MediaSpan<Real>& span) {
+  using V = Vector<Real>;
+  const int length = span.end - span.begin;
+  const Real *ex_row = t.other[0], *ey_row = t.other[1], *ez_row = t.other[2];
+  const Real *ey_ip = t.beside_x[1], *ez_ip = t.beside_x[2], *ex_jp = t.beside_y[0], *ez_jp = t.beside_y[2];
+  for (int k = span.begin; k < span.end; k += V::width) {
+    const auto ex = V::load(ex_row + k), ey = V::load(ey_row + k), ez = V::load(ez_row + k);
+    const auto inv_z = V::load(t.inv_z + k);
+    const auto dy_ez =
+        stretched<Real, layer_y>(V::load(ez_jp + k) - ez, t.inv_y, t.y_b, t.y_c, t.y_psi_second + k);
+    const auto dy_ex =
+        stretched<Real, layer_y>(V::load(ex_jp + k) - ex, t.inv_y, t.y_b, t.y_c, t.y_psi_first + k);
+    const auto dx_ey =
+        stretched<Real, layer_x>(V::load(ey_ip + k) - ey, t.inv_x, t.x_b, t.x_c, t.x_psi_second + k);
+    const auto dx_ez =
+        stretched<Real, layer_x>(V::load(ez_ip + k) - ez, t.inv_x, t.x_b, t.x_c, t.x_psi_first + k);
+    const auto dz_ey = inv_z * (V::load_any(ey_row + k + 1) - ey);
+    const auto dz_ex = inv_z * (V::load_any(ex_row + k + 1) - ex);
+    const int s = k - span.begin;
+    move<Real, mixed>(t.own[0], k, s, length, span, 0, dz_ey - dy_ez);
+    move<Real, mixed>(t.own[1], k, s, length, span, 1, dx_ez - dz_ex);
+    move<Real, mixed>(t.own[2], k, s, length, span, 2, dy_ex - dx_ey);
+  }
+}
+
+template <class Real, bool layer_x, bool layer_y>
+void row_e(const RowTask<Real>& t) {
+  for (int n = 0; n < t.n_spans; ++n) {
+    if (t.spans[n].mixed)
+      span_e<Real, layer_x, layer_y, true>(t, t.spans[n]);
+    else
+      span_e<Real, layer_x, layer_y, false>(t, t.spans[n]);
+  }
+}
+
+template <class Real, bool layer_x, bool layer_y>
+void row_h(const RowTask<Real>& t) {
+  for (int n = 0; n < t.n_spans; ++n) {
+    if (t.spans[n].mixed)
+      span_h<Real, layer_x, layer_y, true>(t, t.spans[n]);
+    else
+      span_h<Real, layer_x, layer_y, false>(t, t.spans[n]);
+  }
+}
+
+template <class Real>
+void advance_e(const RowTask<Real>& t) {
+  const bool x = t.x_psi_first != nullptr, y = t.y_psi_first != nullptr;
+  x ? (y ? row_e<Real, true, true>(t) : row_e<Real, true, false>(t))
+    : (y ? row_e<Real, false, true>(t) : row_e<Real, false, false>(t));
+}
+
+template <class Real>
+void advance_h(const RowTask<Real>& t) {
+  const bool x = t.x_psi_first != nullptr, y = t.y_psi_first != nullptr;
+  x ? (y ? row_h<Real, true, true>(t) : row_h<Real, true, false>(t))
+    : (y ? row_h<Real, false, true>(t) : row_h<Real, false, false>(t));
+}
+
+/// Ex gains -psi of dHy/dz, Ey gains +psi of dHx/dz.
+template <class Real>
+void z_layer_e(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
+  const Real* __restrict hx = t.other[0] + z.begin, * __restrict hy = t.other[1] + z.begin;
+  Real* __restrict ex = t.own[0] + z.begin, * __restrict ey = t.own[1] + z.begin;
+  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
+  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
+#pragma omp simd
+  for (int m = 0; m < z.n; ++m) {
+    const Real memory_x = b[m] * psi_x[m] + c[m] * (hy[m] - hy[m - 1]);
+    const Real memory_y = b[m] * psi_y[m] + c[m] * (hx[m] - hx[m - 1]);
+    psi_x[m] = memory_x;
+    psi_y[m] = memory_y;
+    ex[m] -= gain_x[m] * memory_x;
+    ey[m] += gain_y[m] * memory_y;
+  }
+}
+
+/// Hx gains +psi of dEy/dz, Hy gains -psi of dEx/dz.
+template <class Real>
+void z_layer_h(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
+  const Real* __restrict ex = t.other[0] + z.begin, * __restrict ey = t.other[1] + z.begin;
+  Real* __restrict hx = t.own[0] + z.begin, * __restrict hy = t.own[1] + z.begin;
+  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
+  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
+#pragma omp simd
+  for (int m = 0; m < z.n; ++m) {
+    const Real memory_x = b[m] * psi_x[m] + c[m] * (ey[m + 1] - ey[m]);
+    const Real memory_y = b[m] * psi_y[m] + c[m] * (ex[m + 1] - ex[m]);
+    psi_x[m] = memory_x;
+    psi_y[m] = memory_y;
+    hx[m] += gain_x[m] * memory_x;
+    hy[m] -= gain_y[m] * memory_y;
+  }
+}
+
+template <class Real>
+RowKernels<Real> make_kernels(std::string_view name) {
+  return {advance_e<Real>, advance_h<Real>, z_layer_e<Real>, z_layer_h<Real>, name};
+}
+
+}  // namespace WANEWALL_VECTOR_NAMESPACE
+}  // namespace wanewall

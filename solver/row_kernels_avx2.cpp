@@ -1,0 +1,14 @@
+#define WANEWALL_VECTOR_BYTES 32
+#define WANEWALL_VECTOR_NAMESPACE vector_avx2
+#include "solver/row_kernels.inl"
+
+namespace wanewall {
+
+RowKernels<float> row_kernels_avx2_float() {
+  return vector_avx2::make_kernels<float>("AVX2");
+}
+RowKernels<double> row_kernels_avx2_double() {
+  return vector_avx2::make_kernels<double>("AVX2");
+}
+
+}  // namespace wanewall

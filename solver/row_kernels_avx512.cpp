@@ -1,0 +1,14 @@
+#define WANEWALL_VECTOR_BYTES 64
+#define WANEWALL_VECTOR_NAMESPACE vector_avx512
+#include "solver/row_kernels.inl"
+
+namespace wanewall {
+
+RowKernels<float> row_kernels_avx512_float() {
+  return vector_avx512::make_kernels<float>("AVX-512");
+}
+RowKernels<double> row_kernels_avx512_double() {
+  return vector_avx512::make_kernels<double>("AVX-512");
+}
+
+}  // namespace wanewall

@@ -1,0 +1,14 @@
+#define WANEWALL_VECTOR_BYTES 16
+#define WANEWALL_VECTOR_NAMESPACE vector_base
+#include "solver/row_kernels.inl"
+
+namespace wanewall {
+
+RowKernels<float> row_kernels_base_float() {
+  return vector_base::make_kernels<float>("baseline");
+}
+RowKernels<double> row_kernels_base_double() {
+  return vector_base::make_kernels<double>("baseline");
+}
+
+}  // namespace wanewall
