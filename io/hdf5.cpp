@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cstring>
+#include <filesystem>
 #include <limits>
 #include <new>
 #include <numeric>
@@ -226,6 +227,10 @@ File::File(Handle file, Handle root, std::shared_ptr<Context> context)
 
 File File::open(const std::string& path) {
   auto context = std::make_shared<Context>(path);
+  std::error_code ignored;
+  const auto kind = std::filesystem::status(path, ignored).type();
+  if (kind != std::filesystem::file_type::regular && kind != std::filesystem::file_type::not_found)
+    throw FileError(fmt::format("{}: cannot read: it is not a regular file", path));
   const Handle access(context->checked(H5Pcreate(H5P_FILE_ACCESS), "preparing to read", "it"), H5Pclose);
   // A record is never changed under its name, so there is nothing to lock; some network file systems cannot.
   context->checked(H5Pset_file_locking(access.get(), false, true), "preparing to read", "it");
@@ -241,6 +246,8 @@ File File::create(AtomicFile& target) {
   context->disk = std::make_unique<Disk>(target.descriptor());
   const Handle access(context->checked(H5Pcreate(H5P_FILE_ACCESS), "preparing to write", "it"), H5Pclose);
   context->checked(set_disk(access.get(), *context->disk), "preparing to write", "it");
+  // Chunks are written whole, so that a cache of them would only put off the news of a full disk.
+  context->checked(H5Pset_cache(access.get(), 0, 0, 0, 0.0), "preparing to write", "it");
   context->checked(H5Pset_libver_bounds(access.get(), H5F_LIBVER_V110, H5F_LIBVER_V110), "preparing to write",
                    "it");
   context->checked(H5Pset_fclose_degree(access.get(), H5F_CLOSE_STRONG), "preparing to write", "it");

@@ -136,13 +136,13 @@ hdf5::Group MeshRecordWriter::meshes_of(long step) {
 Vec3 MeshRecordWriter::fallback_spacing_m(const SnapshotList& list) const {
   const auto request = std::find_if(requests_.begin(), requests_.end(),
                                     [&](const SnapshotRequest& r) { return r.name == list.name; });
-  const int stride = request == requests_.end() ? 1 : request->stride;
   Vec3 spacing_m{};
   for (const Axis axis : all_axes) {
     const auto a = static_cast<std::size_t>(index_of(axis));
     const MeshLines& lines = lattice_.along(axis);
     const int node = lines.nearest_node(list.positions_m[a].front());
-    spacing_m[a] = stride * lines.cell_m(std::min(node, lines.cells() - 1));
+    const bool is_strided = request != requests_.end() && request->normal != axis;
+    spacing_m[a] = (is_strided ? request->stride : 1) * lines.cell_m(std::min(node, lines.cells() - 1));
   }
   return spacing_m;
 }
