@@ -13,7 +13,8 @@
 namespace wanewall {
 namespace {
 
-constexpr std::size_t largest_csv_bytes = 64 << 20;
+constexpr std::size_t largest_csv_bytes = 4 << 20;
+constexpr std::size_t most_samples = 20'000;
 
 using scene::reject;
 using scene::shown;
@@ -40,6 +41,11 @@ std::vector<std::string_view> fields_of(std::string_view line) {
 
 Samples read_samples_csv(const std::string& path) {
   const std::string text = read_text_file(path, "reading the pulse's samples", largest_csv_bytes);
+  if (text.size() > largest_csv_bytes)
+    reject(path, {{},
+                  "the file is too large",
+                  fmt::format("at most {} bytes", largest_csv_bytes),
+                  "thin the samples out"});
   Samples samples;
   const auto bad = [&](int line, const std::string& wrong, const std::string& next) {
     reject(path, {{line, 1}, wrong, "two numbers on each line: time in s (increasing) and value", next});
@@ -68,6 +74,9 @@ Samples read_samples_csv(const std::string& path) {
     if (!samples.time_s.empty() && parsed[0].value <= samples.time_s.back())
       bad(number, fmt::format("the time {} is not later than the one before it", shown(fields[0])),
           "sort the lines by time and remove repeated ones");
+    if (samples.time_s.size() == most_samples)
+      bad(number, fmt::format("more than {} samples", most_samples),
+          "thin them out; straight lines join them");
     samples.time_s.push_back(parsed[0].value);
     samples.value.push_back(parsed[1].value);
   }

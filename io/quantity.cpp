@@ -15,6 +15,7 @@ struct FamilyEntry {
   Family family;
   std::string_view name;
   bool counted;
+  std::string_view usual;
   std::vector<Unit> units;
 };
 
@@ -23,39 +24,47 @@ const std::vector<FamilyEntry>& families() {
       {Family::length,
        "length",
        false,
+       "mm",
        {{"nm", 1e-9}, {"um", 1e-6}, {"mm", 1e-3}, {"cm", 1e-2}, {"m", 1.0}, {"km", 1e3}}},
       {Family::time,
        "time",
        false,
+       "ns",
        {{"fs", 1e-15}, {"ps", 1e-12}, {"ns", 1e-9}, {"us", 1e-6}, {"ms", 1e-3}, {"s", 1.0}}},
       {Family::frequency,
        "frequency",
        false,
+       "GHz",
        {{"Hz", 1.0}, {"kHz", 1e3}, {"MHz", 1e6}, {"GHz", 1e9}, {"THz", 1e12}}},
-      {Family::angle, "angle", false, {{"mrad", 1e-3}, {"deg", pi / 180.0}, {"rad", 1.0}}},
-      {Family::level, "level", false, {{"dB", 1.0}}},
+      {Family::angle, "angle", false, "deg", {{"mrad", 1e-3}, {"deg", pi / 180.0}, {"rad", 1.0}}},
+      {Family::level, "level", false, "dB", {{"dB", 1.0}}},
       {Family::conductivity,
        "conductivity",
        false,
+       "S/m",
        {{"nS/m", 1e-9}, {"uS/m", 1e-6}, {"mS/m", 1e-3}, {"S/m", 1.0}, {"kS/m", 1e3}, {"MS/m", 1e6}}},
       {Family::magnetic_conductivity,
        "magnetic conductivity",
        false,
+       "ohm/m",
        {{"mohm/m", 1e-3}, {"ohm/m", 1.0}, {"kohm/m", 1e3}, {"Mohm/m", 1e6}}},
       {Family::electric_field,
        "electric field",
        false,
+       "V/m",
        {{"uV/m", 1e-6}, {"mV/m", 1e-3}, {"V/m", 1.0}, {"kV/m", 1e3}, {"MV/m", 1e6}}},
       {Family::current_moment,
        "current moment",
        false,
+       "A m",
        {{"nA m", 1e-9}, {"uA m", 1e-6}, {"mA m", 1e-3}, {"A m", 1.0}, {"kA m", 1e3}}},
       {Family::voltage_moment,
        "voltage moment",
        false,
+       "V m",
        {{"nV m", 1e-9}, {"uV m", 1e-6}, {"mV m", 1e-3}, {"V m", 1.0}, {"kV m", 1e3}}},
-      {Family::steps, "number of steps", true, {{"step", 1.0}, {"steps", 1.0}}},
-      {Family::cells, "number of cells", true, {{"cell", 1.0}, {"cells", 1.0}}}};
+      {Family::steps, "number of steps", true, "steps", {{"step", 1.0}, {"steps", 1.0}}},
+      {Family::cells, "number of cells", true, "cells", {{"cell", 1.0}, {"cells", 1.0}}}};
   return table;
 }
 
@@ -123,6 +132,16 @@ std::string_view name_of(Family family) {
 
 const std::vector<Unit>& units_of(Family family) {
   return entry_of(family).units;
+}
+
+std::string with_article(Family family) {
+  const std::string_view name = name_of(family);
+  return (std::string_view("aeiou").find(name.front()) == std::string_view::npos ? "a " : "an ") +
+         std::string(name);
+}
+
+std::string_view usual_unit(Family family) {
+  return entry_of(family).usual;
 }
 
 bool is_counted(Family family) {

@@ -30,8 +30,11 @@ struct Unit {
 };
 
 std::string_view name_of(Family family);  ///< "length", "magnetic conductivity", ...
+std::string with_article(Family family);  ///< "a length", "an angle", ...
 /// All units of a family, smallest first.
 const std::vector<Unit>& units_of(Family family);
+/// A unit of the family that scenes often use, for examples: "mm", "GHz".
+std::string_view usual_unit(Family family);
 /// The units of a family for a message: "nm, um, mm, cm, m, km".
 std::string unit_list(Family family);
 /// True where only whole numbers make sense (steps, cells).

@@ -58,7 +58,7 @@ void reject(const std::string& file, std::vector<Complaint> complaints) {
 std::string nearest(std::string_view word, const std::vector<std::string>& candidates) {
   if (word.size() > 64) return {};
   std::string best;
-  std::size_t best_distance = std::max<std::size_t>(1, word.size() / 3) + 1;
+  std::size_t best_distance = (word.size() + 2) / 3 + 1;
   for (const std::string& candidate : candidates) {
     const std::size_t distance = edit_distance(word, candidate);
     if (distance < best_distance) {

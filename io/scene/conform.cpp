@@ -24,7 +24,7 @@ class Checker {
         unknown(entry, declared, inner);
     }
     for (const Key& key : declared.keys)
-      if (key.required && node.find(key.name) == nullptr)
+      if (key.required && node.find(key.name) == nullptr && !is_misspelt(node, declared, {key.name}))
         complain(node.place, fmt::format("{} is missing", path.empty() ? key.name : path + "." + key.name),
                  allowed_text(key.form), fmt::format("add `{}:`. {}", key.name, key.sentence));
     groups(node, declared, path);
@@ -39,6 +39,15 @@ class Checker {
   void not_allowed(const Node& node, const std::string& path, std::string allowed, std::string next) {
     complain(node.place, fmt::format("{} = {} is not allowed", path, shown(node)), std::move(allowed),
              std::move(next));
+  }
+
+  /// Whether an unknown key is near to one of these: it has been complained of already.
+  static bool is_misspelt(const Node& node, const Block& declared, const std::vector<std::string>& names) {
+    return std::any_of(node.entries.begin(), node.entries.end(), [&](const Entry& entry) {
+      if (declared.find(entry.key) != nullptr) return false;
+      const std::string near = nearest(entry.key, declared.names());
+      return std::find(names.begin(), names.end(), near) != names.end();
+    });
   }
 
   void unknown(const Entry& entry, const Block& declared, const std::string& path) {
@@ -68,9 +77,7 @@ class Checker {
                "one of " + joined(group), "remove one of the two");
     };
     const auto none = [&](const std::vector<std::string>& group, std::string_view count) {
-      // A wrong key that is near to one of the group has been complained of already.
-      for (const Entry& entry : node.entries)
-        if (declared.find(entry.key) == nullptr && !nearest(entry.key, group).empty()) return;
+      if (is_misspelt(node, declared, group)) return;
       complain(node.place, fmt::format("{} has none of the keys that say what it is", of_path),
                fmt::format("{} of {}", count, joined(group)), "add one");
     };
@@ -140,10 +147,9 @@ class Checker {
           not_allowed(node, path, allowed, fmt::format("choose a value{}", range_text(declared)));
         return;
       case QuantityFault::no_unit: {
-        const auto& units = units_of(declared.family);
-        return not_allowed(
-            node, path, allowed,
-            fmt::format("write the unit behind the number: `{} {}`", shown(node), units.back().name));
+        return not_allowed(node, path, allowed,
+                           fmt::format("write the unit behind the number, for example `{} {}`", shown(node),
+                                       usual_unit(declared.family)));
       }
       case QuantityFault::wrong_unit:
         if (declared.kind == Form::Kind::quantity)

@@ -39,17 +39,21 @@ void Reading::warn(Place place, const std::string& text) {
                                     : fmt::format("{}: {}", shown(file), text));
 }
 
-Cursor::Cursor(Reading& reading, const Node* node, const Block& block, std::string path, const Node* under,
+Cursor::Cursor(Reading& reading, const Node* node, const Block& block, std::string path, Place outer,
                bool is_default)
     : reading_(&reading),
       node_(node),
-      under_(under),
       block_(&block),
       path_(std::move(path)),
+      outer_(outer),
       is_default_(is_default) {}
 
 std::string Cursor::path(std::string_view key) const {
   return path_.empty() ? std::string(key) : path_ + "." + std::string(key);
+}
+
+std::string Cursor::given_path(std::string_view key) const {
+  return !has_itself(key) && has(key) ? under_path_ + "." + std::string(key) : path(key);
 }
 
 const Key& Cursor::declared(std::string_view key) const {
@@ -77,7 +81,7 @@ Place Cursor::place() const {
 
 Place Cursor::place(std::string_view key) const {
   const Node* node = node_of(key);
-  return node != nullptr ? node->place : place();
+  return node != nullptr && !is_default_ ? node->place : place();
 }
 
 const Node& Cursor::used_node(std::string_view key) {
@@ -140,13 +144,16 @@ Cursor Cursor::block(std::string_view key) {
   const Block& inner = *alternative(declared(key).form, Form::Kind::block).block;
   const Node* node = node_of(key);
   if (node == nullptr && !declared(key).fallback.empty())
-    return {*reading_, &default_node(key), inner, path(key), nullptr, true};
-  return {*reading_, node, inner, path(key), nullptr, is_default_};
+    return {*reading_, &default_node(key), inner, path(key), place(), true};
+  return {*reading_, node, inner, path(key), place(), is_default_};
 }
 
 Cursor Cursor::block_under(std::string_view key, const Cursor& under) {
   const Block& inner = *alternative(declared(key).form, Form::Kind::block).block;
-  return {*reading_, node_of(key), inner, path(key), under.node_, is_default_};
+  Cursor block(*reading_, node_of(key), inner, path(key), place(), is_default_);
+  block.under_ = under.node_;
+  block.under_path_ = under.path_;
+  return block;
 }
 
 std::vector<Cursor> Cursor::blocks(std::string_view key) {
@@ -188,9 +195,10 @@ Node::Kind Cursor::kind(std::string_view key) const {
 
 void Cursor::reject(std::string_view key, const std::string& allowed, const std::string& next) const {
   const Node* node = node_of(key);
-  reject_text(key,
-              fmt::format("{} = {} is not allowed", path(key), node != nullptr ? shown(*node) : "(nothing)"),
-              allowed, next);
+  reject_text(
+      key,
+      fmt::format("{} = {} is not allowed", given_path(key), node != nullptr ? shown(*node) : "(nothing)"),
+      allowed, next);
 }
 
 void Cursor::reject_text(std::string_view key, const std::string& wrong, const std::string& allowed,

@@ -31,15 +31,17 @@ struct Reading {
 /// `under` is a block that stands in for keys which the first does not give (every_face under a face).
 class Cursor {
  public:
-  Cursor(Reading& reading, const Node* node, const Block& block, std::string path,
-         const Node* under = nullptr, bool is_default = false);
+  Cursor(Reading& reading, const Node* node, const Block& block, std::string path, bool is_default = false);
 
   const std::string& path() const { return path_; }
   std::string path(std::string_view key) const;
+  /// Where the key really stands: in the block itself or in the one under it.
+  std::string given_path(std::string_view key) const;
   bool is_given() const { return node_ != nullptr; }
   /// Given in the block itself or in the one under it.
   bool has(std::string_view key) const { return node_of(key) != nullptr; }
   bool has_itself(std::string_view key) const;
+  /// Of the block, or of what it would stand in when it is absent.
   Place place() const;
   /// Of the value, or of the block when the key is absent.
   Place place(std::string_view key) const;
@@ -87,9 +89,11 @@ class Cursor {
 
   Reading* reading_;
   const Node* node_;
-  const Node* under_;
   const Block* block_;
   std::string path_;
+  Place outer_;  ///< of the block that this one stands in
+  const Node* under_ = nullptr;
+  std::string under_path_;
   bool is_default_;
 };
 

@@ -42,7 +42,7 @@ std::string range_text(const Form& form) {
 std::string allowed_text(const Form& form) {
   switch (form.kind) {
     case Form::Kind::quantity:
-      return fmt::format("a {}{} with its unit ({})", name_of(form.family), range_text(form),
+      return fmt::format("{}{} with its unit ({})", with_article(form.family), range_text(form),
                          unit_list(form.family));
     case Form::Kind::number:
       return fmt::format("a plain number{}", range_text(form));

@@ -11,6 +11,7 @@ namespace wanewall::scene {
 namespace {
 
 constexpr std::size_t most_points = 10000;
+constexpr int least_audit_depth = 4;  ///< cells; the audit looks at three planes
 
 std::vector<Component> components_of(const std::vector<std::string>& words) {
   std::vector<Component> list;
@@ -113,6 +114,15 @@ AuditRequest read_audit(Cursor& record, const Scene& scene) {
       if (wanted) all += fmt::format("{}{}", all.empty() ? "" : ", ", name_of(side));
     }
     block.use("faces", "[" + all + "]");
+  }
+  for (Side side : all_sides) {
+    const int depth = scene.problem.lattice.clear_cells(axis_of(side)).size();
+    if (!audit.faces[static_cast<std::size_t>(index_of(side))] || depth >= least_audit_depth) continue;
+    block.reject_text(
+        "faces",
+        fmt::format("{} cannot be audited: the clear volume is {} cells deep there", name_of(side), depth),
+        fmt::format("at least {} cells in front of an audited face", least_audit_depth),
+        "widen clear_volume, list the other faces in shell_audit.faces, or write `shell_audit: off`");
   }
   if (block.has("sample_every")) audit.sample_every = static_cast<int>(block.quantity("sample_every"));
   if (block.kind("frequencies") == Node::Kind::list) {

@@ -86,7 +86,7 @@ class TreeBuilder : public YAML::EventHandler {
     auto node = std::make_shared<Node>();
     node->place = place_of(mark);
     remember(anchor, node);
-    add(node, 1);
+    add(node, 1, node->place);
   }
 
   void OnAlias(const YAML::Mark& mark, YAML::anchor_t anchor) override {
@@ -97,7 +97,7 @@ class TreeBuilder : public YAML::EventHandler {
     if (found == anchors_.end() || found->second.node->kind == Node::Kind::nothing)
       reject(file_, {place_of(mark), "an alias (*name) inside the value it stands for",
                      "aliases of values that are complete", "write the value out"});
-    add(found->second.node, found->second.size);
+    add(found->second.node, found->second.size, place_of(mark));
   }
 
   void OnScalar(const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor,
@@ -108,7 +108,7 @@ class TreeBuilder : public YAML::EventHandler {
     node->place = place_of(mark);
     node->text = value;
     remember(anchor, node);
-    add(node, 1);
+    add(node, 1, node->place);
   }
 
   void OnSequenceStart(const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor,
@@ -164,29 +164,29 @@ class TreeBuilder : public YAML::EventHandler {
     Open level = std::move(stack_.back());
     stack_.pop_back();
     if (level.anchor != 0) anchors_[level.anchor] = {level.node, level.size};
-    add(level.node, level.size);
+    add(level.node, level.size, level.node->place);
   }
 
-  /// Hands a complete node of `size` nodes to the level it stands in.
-  void add(const NodePtr& node, std::size_t size) {
+  /// Hands a complete node of `size` nodes, found at `place`, to the level it stands in.
+  void add(const NodePtr& node, std::size_t size, Place place) {
     if (stack_.empty()) {
       root_ = node;
       return;
     }
     Open& level = stack_.back();
     if (level.size + size > most_nodes)
-      reject(file_, {node->place, "the scene expands to too many values",
+      reject(file_, {place, "the scene expands to too many values",
                      fmt::format("at most {} values, aliases counted in full", most_nodes),
                      "write fewer objects or use fewer aliases"});
     if (level.node->kind == Node::Kind::list) {
       level.node->items.push_back(node);
     } else if (!level.has_key) {
       if (node->kind != Node::Kind::scalar)
-        reject(file_, {node->place, fmt::format("{} as a key", shown(*node)), "words as keys",
+        reject(file_, {place, fmt::format("{} as a key", shown(*node)), "words as keys",
                        "check the colons and brackets of this line"});
       level.has_key = true;
       level.key = node->text;
-      level.key_place = node->place;
+      level.key_place = place;
       return;  // counted with its value
     } else {
       level.has_key = false;
