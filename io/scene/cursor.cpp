@@ -76,7 +76,7 @@ bool Cursor::has_itself(std::string_view key) const {
 }
 
 Place Cursor::place() const {
-  return node_ != nullptr ? node_->place : Place{};
+  return node_ != nullptr && !is_default_ ? node_->place : outer_;
 }
 
 Place Cursor::place(std::string_view key) const {

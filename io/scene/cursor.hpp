@@ -31,7 +31,8 @@ struct Reading {
 /// `under` is a block that stands in for keys which the first does not give (every_face under a face).
 class Cursor {
  public:
-  Cursor(Reading& reading, const Node* node, const Block& block, std::string path, bool is_default = false);
+  Cursor(Reading& reading, const Node* node, const Block& block, std::string path, Place outer = {1, 1},
+         bool is_default = false);
 
   const std::string& path() const { return path_; }
   std::string path(std::string_view key) const;
