@@ -130,6 +130,15 @@ std::string_view name_of(Family family) {
   return entry_of(family).name;
 }
 
+const std::vector<Family>& all_families() {
+  static const std::vector<Family> list = [] {
+    std::vector<Family> all;
+    for (const FamilyEntry& entry : families()) all.push_back(entry.family);
+    return all;
+  }();
+  return list;
+}
+
 const std::vector<Unit>& units_of(Family family) {
   return entry_of(family).units;
 }

@@ -31,6 +31,7 @@ struct Unit {
 
 std::string_view name_of(Family family);  ///< "length", "magnetic conductivity", ...
 std::string with_article(Family family);  ///< "a length", "an angle", ...
+const std::vector<Family>& all_families();
 /// All units of a family, smallest first.
 const std::vector<Unit>& units_of(Family family);
 /// A unit of the family that scenes often use, for examples: "mm", "GHz".

@@ -1,0 +1,68 @@
+// wanewall check: what a scene will build, and whether it can work.
+#include <unistd.h>
+
+#include <memory>
+#include <string>
+
+#include "io/commands.hpp"
+#include "io/scene.hpp"
+#include "io/scene/build_report.hpp"
+#include "io/terminal.hpp"
+
+namespace wanewall {
+namespace {
+
+struct CheckOptions {
+  std::string scene_path;
+  bool values = false;
+  bool schema = false;
+  bool reference = false;
+};
+
+double machine_memory_bytes() {
+  return static_cast<double>(sysconf(_SC_PHYS_PAGES)) * static_cast<double>(sysconf(_SC_PAGE_SIZE));
+}
+
+ExitCode check(const CheckOptions& options) {
+  if (options.schema) {
+    say(scene_schema_json());
+    return ExitCode::done;
+  }
+  if (options.reference) {
+    say(scene_reference_markdown());
+    return ExitCode::done;
+  }
+  const Scene scene = read_scene(options.scene_path);
+  say(scene::build_report(scene, footprint_of(scene.problem), {options.values, machine_memory_bytes()}));
+  return ExitCode::done;
+}
+
+}  // namespace
+
+void add_check_command(CLI::App& app, Action& action) {
+  auto options = std::make_shared<CheckOptions>();
+  CLI::App* command = app.add_subcommand("check", "Say what a scene will build, and whether it can work");
+  CLI::Option* path = command->add_option("scene", options->scene_path, "Scene file (YAML)");
+  CLI::Option* values =
+      command->add_flag("--values", options->values, "Also list every value used, defaults included");
+  CLI::Option* schema = command->add_flag("--schema", options->schema,
+                                          "Print the JSON Schema of the scene language, for editors");
+  CLI::Option* reference =
+      command->add_flag("--reference", options->reference, "Print the reference page of the scene language");
+  schema->excludes(path)->excludes(values)->excludes(reference);
+  reference->excludes(path)->excludes(values);
+  command->footer(
+      "Nothing is computed and nothing is written. A scene that cannot work ends with exit code 3.\n\n"
+      "Examples:\n"
+      "  wanewall check drum.yaml\n"
+      "  wanewall check drum.yaml --values\n"
+      "  wanewall check --schema > wanewall.schema.json\n"
+      "  wanewall check --reference > scene.md");
+  command->callback([options, &action] {
+    if (options->scene_path.empty() && !options->schema && !options->reference)
+      throw CLI::RequiredError("scene");
+    action = [options] { return check(*options); };
+  });
+}
+
+}  // namespace wanewall

@@ -1,0 +1,26 @@
+// What a scene will build, as aligned text for people: the answer of `wanewall check`.
+#pragma once
+
+#include <string>
+
+#include "io/scene.hpp"
+#include "solver/results.hpp"
+
+namespace wanewall::scene {
+
+struct ReportOptions {
+  bool with_values = false;    ///< also list every value used
+  double machine_bytes = 0.0;  ///< memory of this machine; 0: not known
+};
+
+std::string build_report(const Scene& scene, const Footprint& footprint, const ReportOptions& options);
+
+/// Reflection of a face's layer at normal incidence in the continuum, for waves in the background [dB]:
+/// 20 log10 exp(-2 n eta0 * integral of sigma), n: refractive index. The lattice does worse for strong
+/// layers.
+double continuum_reflection_db(const Problem& problem, Side side);
+
+/// Values that all snapshots of a run hold together, before compression.
+double snapshot_values(const Problem& problem);
+
+}  // namespace wanewall::scene
