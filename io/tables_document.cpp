@@ -1,0 +1,198 @@
+#include "io/tables_document.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+
+#include "io/quantity.hpp"
+#include "postproc/audit_tables.hpp"
+#include "postproc/point_tables.hpp"
+
+namespace wanewall {
+namespace {
+
+std::string frequency_text(double hz) {
+  return format_quantity(hz, Family::frequency, 4);
+}
+
+// A title may hold a line end, which would end the heading.
+std::string one_line(std::string text) {
+  std::replace_if(
+      text.begin(), text.end(), [](char c) { return c == '\n' || c == '\r'; }, ' ');
+  return text;
+}
+
+std::string provenance_text(const Record& record) {
+  const Provenance& by = record.provenance;
+  const double run_ns = time_of_e_s(record.result.steps, record.lattice.dt_s) * 1e9;
+  std::string text = fmt::format(
+      "- band {} to {}; {} steps of {} ({:.4g} ns), Courant number {:.4f}, {} precision\n",
+      frequency_text(record.band_lo_hz), frequency_text(record.band_hi_hz), record.result.steps,
+      format_quantity(record.lattice.dt_s, Family::time, 5), run_ns, record.lattice.courant_number(),
+      record.precision == Precision::single_precision ? "single" : "double");
+  const Index3 n = record.lattice.cells();
+  text += fmt::format("- {} x {} x {} cells, shell included; the run {}\n", n[0], n[1], n[2],
+                      name_of(record.result.reason));
+  text += fmt::format("- computed by wanewall {} ({}), {}; tables by wanewall {}\n", by.program_version,
+                      by.build_type, by.ended_utc, WANEWALL_VERSION);
+  return text;
+}
+
+std::string method_text(const AuditReport& report) {
+  bool any_split = false, any_taper = false, any_lossy = false;
+  for (const FaceReport& face : report.faces) {
+    if (!face.not_split_because.empty()) continue;
+    any_split = true;
+    any_taper = any_taper || !face.basis_is_exact;
+    any_lossy = any_lossy || face.conductivity_s_per_m > 0.0;
+  }
+  std::string text =
+      "## How to read the shell tables\n\n"
+      "- Powers are 1/2 Re(E x H*) of Fourier sums in W s^2 = J/Hz, outwards through the clear cross-section "
+      "on "
+      "the audit plane,\n  two cells inside the shell. Four times that is the energy per hertz. `net` is the "
+      "direct "
+      "sum over the lattice and holds\n  for any media.\n";
+  if (any_split)
+    text +=
+        "- `outgoing` and `returned` are split from tangential E on two adjacent planes, plane wave by plane "
+        "wave, with "
+        "the\n  lattice's own wavenumbers. R = returned / outgoing. `share` is a bin's part of the face's "
+        "outgoing "
+        "power.\n"
+        "- `floor` is what R would read by error alone, from a third plane of the same run, with a margin of "
+        "6 dB. "
+        "Of R itself the\n  floor leaves the range 20 log(r - f) to 20 log(r + f) open, which is in "
+        "reflection.csv.\n"
+        "- `< x (floor)`: the floor is within 6 dB of the reading or above it, so only the bound x is known. "
+        "`no "
+        "reading`: not\n  even a bound below 0 dB.\n"
+        "- `not illuminated`: outgoing share below -20 dB, so the bin holds the skirts of other angles.\n"
+        "- TE has E along the face, TM has H along it. At exactly normal incidence TM holds E along the "
+        "first "
+        "tangential axis\n  (in the order x, y, z) and TE along the second.\n";
+  if (any_taper)
+    text +=
+        "- Where the face is not periodic, the clear part is read under tapers, and the floor rises towards "
+        "grazing: "
+        "for the\n  exact lattice field of a dipole two wavelengths before a face six wavelengths wide it is "
+        "-55, -52, "
+        "-44, -36, -15 dB\n  in the bins at 5, 15, 25, 35, 45 degrees, and there is no reading beyond. "
+        "Narrow faces "
+        "do worse, wide ones better.\n  To check a better shell than the floor shows, compare with a run "
+        "whose face "
+        "is much thicker.\n"
+        "- `walk-off`: a wave at that angle comes back more than half the clear width to the side, or ends "
+        "in a side "
+        "shell. Less\n  returns than an infinite face would reflect.\n";
+  if (any_lossy)
+    text +=
+        "- In a conducting medium the outgoing and the returned wave also exchange power, so `net` is not "
+        "their "
+        "difference.\n";
+  return text + "\n";
+}
+
+std::string face_heading(const Record& record, const FaceReport& face) {
+  const FaceKind kind = record.face_kinds[static_cast<std::size_t>(index_of(face.side))];
+  std::string text = fmt::format("## Face {} ({}", name_of(face.side), name_of(kind));
+  if (face.shell_cells > 0) text += fmt::format(", {} cells", face.shell_cells);
+  text += ")\n\n";
+  text += fmt::format("Audit plane at {} = {}, clear area {:.4g} m^2", name_of(axis_of(face.side)),
+                      format_quantity(face.plane_m, Family::length, 6), face.clear_area_m2);
+  if (!face.not_split_because.empty()) return text + ". Net power only: " + face.not_split_because + ".\n\n";
+  return text + fmt::format(", relative permittivity {:.4g}, conductivity {:.4g} S/m. Split in {}.\n\n",
+                            face.permittivity_rel, face.conductivity_s_per_m, face.basis);
+}
+
+std::string face_text(const Record& record, const FaceReport& face) {
+  std::string text = face_heading(record, face) + to_markdown(power_table(face)) + "\n";
+  if (!face.not_split_because.empty()) return text;
+  for (const FaceReading& reading : face.readings)
+    text += fmt::format("{}, face {}:\n\n", frequency_text(reading.frequency_hz), name_of(face.side)) +
+            to_markdown(angle_table(reading)) + "\n";
+  return text;
+}
+
+// The floor of an exact basis shows what the end of the record left; under a taper the taper hides it.
+std::string warnings_text(const AuditReport& report) {
+  std::string text;
+  for (const FaceReport& face : report.faces) {
+    if (!face.basis_is_exact) continue;
+    for (const FaceReading& reading : face.readings) {
+      if (!(reading.outgoing_w_s2 > 0.0) || reading.total.floor_db <= -60.0) continue;
+      text += fmt::format(
+          "**Caution:** face {}, {}: the third plane's floor is {:.1f} dB. The record may be too short, or "
+          "something "
+          "crosses the plane.\n\n",
+          name_of(face.side), frequency_text(reading.frequency_hz), reading.total.floor_db);
+    }
+  }
+  return text;
+}
+
+std::string points_text(const Record& record, const std::vector<double>& frequencies_hz) {
+  const std::vector<PointSeries>& points = record.result.points;
+  if (points.empty()) return {};
+  std::string text = "## Points\n\nLargest values in time, " +
+                     std::string("interpolated linearly to the point:\n\n") +
+                     to_markdown(peak_table(points, record.lattice.dt_s)) + "\n";
+  for (const PointSeries& point : points)
+    text += fmt::format("Magnitude of the spectrum dt sum f(t) exp(-j omega t) at {}:\n\n",
+                        one_line(point.name)) +
+            to_markdown(spectrum_table(point, record.lattice.dt_s, frequencies_hz)) + "\n";
+  return text;
+}
+
+}  // namespace
+
+std::vector<double> point_frequencies_hz(const Record& record, const ReportChoice& choice) {
+  const std::vector<double>& audited = record.result.audit.frequencies_hz;
+  std::vector<double> frequencies_hz;
+  if (!choice.frequencies.empty()) {
+    for (std::size_t f : choice.frequencies) frequencies_hz.push_back(audited.at(f));
+  } else if (!audited.empty()) {
+    frequencies_hz = audited;
+  } else {
+    constexpr int n = 9;
+    for (int i = 0; i < n; ++i)
+      frequencies_hz.push_back(record.band_lo_hz + (record.band_hi_hz - record.band_lo_hz) * i / (n - 1));
+  }
+  return frequencies_hz;
+}
+
+std::string tables_markdown(const Record& record, const AuditReport& report, const ReportChoice& choice) {
+  std::string text = fmt::format("# Tables: {}\n\n", one_line(record.title));
+  text += provenance_text(record) + "\n";
+  if (record.result.audit.faces.empty()) {
+    text +=
+        "This record holds no shell audit, so there are no tables of power and reflection. A scene asks for "
+        "it "
+        "with\n`record: {shell_audit: {frequencies: 9}}`.\n\n";
+  } else {
+    text += "## Shell at a glance\n\n" + to_markdown(overview_table(report)) + "\n" + warnings_text(report) +
+            method_text(report);
+    for (const FaceReport& face : report.faces) text += face_text(record, face);
+  }
+  if (record.result.points.empty() && record.result.audit.faces.empty())
+    text += "No points were recorded either.\n";
+  return text + points_text(record, point_frequencies_hz(record, choice));
+}
+
+std::vector<NamedText> tables_csv(const Record& record, const AuditReport& report,
+                                  const ReportChoice& choice) {
+  std::vector<NamedText> files;
+  if (!report.faces.empty()) {
+    files.push_back({"reflection.csv", to_csv(reflection_rows(report))});
+    files.push_back({"power.csv", to_csv(power_rows(report))});
+  }
+  if (!record.result.points.empty()) {
+    const double dt_s = record.lattice.dt_s;
+    files.push_back({"points.csv", to_csv(peak_table(record.result.points, dt_s))});
+    files.push_back({"point_spectra.csv", to_csv(spectrum_rows(record.result.points, dt_s,
+                                                               point_frequencies_hz(record, choice)))});
+  }
+  return files;
+}
+
+}  // namespace wanewall

@@ -1,0 +1,176 @@
+#include "postproc/reflection_table.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <exception>
+#include <limits>
+#include <numeric>
+#include <stdexcept>
+
+#include "geometry/constants.hpp"
+#include "postproc/audit_planes.hpp"
+#include "postproc/face_split.hpp"
+
+namespace wanewall {
+namespace {
+
+constexpr double infinity = std::numeric_limits<double>::infinity();
+constexpr double least_share_db = -20.0;
+
+double db_of_power(double ratio) {
+  return ratio > 0.0 ? 10.0 * std::log10(ratio) : -infinity;
+}
+double db_of_field(double ratio) {
+  return ratio > 0.0 ? 20.0 * std::log10(ratio) : -infinity;
+}
+
+AngleReading reading_of(const SplitPower& power, double face_outgoing) {
+  AngleReading reading;
+  reading.outgoing_w_s2 = power.outgoing;
+  reading.returned_w_s2 = power.returned;
+  reading.share_db = face_outgoing > 0.0 ? db_of_power(power.outgoing / face_outgoing) : -infinity;
+  reading.reflection = reflection_of(power.outgoing, power.returned, power.floor);
+  reading.waves = power.waves;
+  reading.not_illuminated = reading.share_db < least_share_db;
+  return reading;
+}
+
+// Distance that a wave travels along the normal from plane 0 to the outer wall [m].
+double depth_m(const Lattice& lattice, const AuditFace& face) {
+  const MeshLines& lines = lattice.along(axis_of(face.side));
+  const double wall_m = is_high(face.side) ? lines.node_m(lines.cells()) : lines.node_m(0);
+  return std::abs(wall_m - lines.node_m(plane_zero(lattice, face)));
+}
+
+void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& face, std::size_t f,
+               const LatticeMedium& medium, const WaveBasis& basis, int angle_bins) {
+  const FaceSplit split = split_planes(tangential_planes(lattice, face, f), cell_outside_m(lattice, face, 0),
+                                       medium, basis, angle_bins);
+  SplitPower all = split.totals[0];
+  all += split.totals[1];
+  reading.outgoing_w_s2 = all.outgoing;
+  reading.returned_w_s2 = all.returned;
+  reading.total = reflection_of(all.outgoing, all.returned, all.floor);
+
+  double tapered_width_m = infinity;
+  for (double width_m : basis.tapered_width_m)
+    if (width_m > 0.0) tapered_width_m = std::min(tapered_width_m, width_m);
+  for (Polarisation pol : both_polarisations) {
+    const SplitPower& total = split.totals[index_of(pol)];
+    reading.by_polarisation[index_of(pol)] = reflection_of(total.outgoing, total.returned, total.floor);
+  }
+  for (int bin = 0; bin < angle_bins; ++bin) {
+    AngleRow row;
+    row.lo_deg = 90.0 * bin / angle_bins;
+    row.hi_deg = 90.0 * (bin + 1) / angle_bins;
+    const double middle_rad = pi / 360.0 * (row.lo_deg + row.hi_deg);
+    row.walk_off = 2.0 * depth_m(lattice, face) * std::tan(middle_rad) > 0.5 * tapered_width_m;
+    for (Polarisation pol : both_polarisations)
+      row.readings[index_of(pol)] =
+          reading_of(split.bins[index_of(pol)][static_cast<std::size_t>(bin)], all.outgoing);
+    reading.rows.push_back(row);
+  }
+}
+
+// All of a face that does not depend on frequency, with room for the readings.
+FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const AuditFace& face,
+                      const std::vector<std::size_t>& frequencies) {
+  FaceReport report;
+  report.side = face.side;
+  report.not_split_because = no_split_because(lattice, face);
+  report.permittivity_rel = face.permittivity_rel;
+  report.permeability_rel = face.permeability_rel;
+  report.conductivity_s_per_m = face.conductivity_s_per_m;
+  report.shell_cells = lattice.shell(face.side);
+  report.plane_m = lattice.along(axis_of(face.side)).node_m(plane_zero(lattice, face));
+  report.clear_area_m2 = clear_area_m2(lattice, face.side);
+  for (std::size_t f : frequencies) {
+    report.readings.emplace_back();
+    report.readings.back().frequency_hz = audit.frequencies_hz.at(f);
+  }
+  if (report.not_split_because.empty() && !frequencies.empty()) {
+    const BasisKind kind = tapered_plane_wave_kind(lattice, face.side);
+    report.basis = kind.name;
+    report.basis_is_exact = kind.is_exact;
+  }
+  return report;
+}
+
+void fill_reading(FaceReading& reading, const AuditRecord& audit, const Lattice& lattice,
+                  const AuditFace& face, std::size_t f, bool with_split, int angle_bins) {
+  reading.net = net_power(lattice, face, f);
+  reading.incident_w_s2 = incident_power_w_s2(lattice, audit, face, f);
+  if (!with_split) return;
+  const LatticeMedium medium = lattice_medium(face.permittivity_rel, face.permeability_rel,
+                                              face.conductivity_s_per_m, reading.frequency_hz, lattice.dt_s);
+  add_split(reading, lattice, face, f, medium, tapered_plane_waves(lattice, face.side, medium), angle_bins);
+}
+
+}  // namespace
+
+Reflection reflection_of(double outgoing, double returned, double floor) {
+  Reflection reading;
+  if (!(outgoing > 0.0)) return reading;
+  const double r = std::sqrt(returned / outgoing), f = std::sqrt(floor / outgoing);
+  reading.value_db = db_of_field(r);
+  reading.high_db = db_of_field(r + f);
+  reading.floor_db = db_of_field(f);
+  const bool is_clear = f <= 0.5 * r;
+  reading.low_db = is_clear ? db_of_field(r - f) : -infinity;
+  reading.kind = is_clear      ? Reflection::Kind::value
+                 : r + f < 1.0 ? Reflection::Kind::bound
+                               : Reflection::Kind::no_reading;
+  return reading;
+}
+
+AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const ReportChoice& choice) {
+  std::vector<std::size_t> frequencies = choice.frequencies;
+  if (frequencies.empty()) {
+    frequencies.resize(audit.frequencies_hz.size());
+    std::iota(frequencies.begin(), frequencies.end(), std::size_t{0});
+  }
+  for (Axis a : all_axes)
+    if (lattice.clear_cells(a).size() < 1)
+      throw std::invalid_argument("the lattice has no clear cells between its shells");
+  AuditReport report;
+  std::vector<const AuditFace*> faces;
+  for (const AuditFace& face : audit.faces) {
+    const bool wanted = choice.faces.empty() ||
+                        std::find(choice.faces.begin(), choice.faces.end(), face.side) != choice.faces.end();
+    if (!wanted) continue;
+    faces.push_back(&face);
+    report.faces.push_back(face_frame(audit, lattice, face, frequencies));
+  }
+  // One reading is one piece of work, computed by one thread from first to last, so that the number of
+  // threads changes no digit.
+  const int n_jobs = static_cast<int>(faces.size() * frequencies.size());
+  std::exception_ptr failure;
+#pragma omp parallel for schedule(dynamic)
+  for (int job = 0; job < n_jobs; ++job) {
+    const std::size_t n = static_cast<std::size_t>(job) / frequencies.size();
+    const std::size_t m = static_cast<std::size_t>(job) % frequencies.size();
+    try {
+      fill_reading(report.faces[n].readings[m], audit, lattice, *faces[n], frequencies[m],
+                   report.faces[n].not_split_because.empty(), choice.angle_bins);
+    } catch (...) {
+#pragma omp critical(audit_report_failure)
+      failure = std::current_exception();
+    }
+  }
+  if (failure) std::rethrow_exception(failure);
+  return report;
+}
+
+const FaceReading* worst_reading(const FaceReport& face) {
+  const auto level_db = [](const FaceReading& reading) {
+    return reading.total.kind == Reflection::Kind::value ? reading.total.value_db : reading.total.high_db;
+  };
+  const FaceReading* worst = nullptr;
+  for (const FaceReading& reading : face.readings) {
+    if (reading.rows.empty() || !(reading.outgoing_w_s2 > 0.0)) continue;
+    if (worst == nullptr || level_db(reading) > level_db(*worst)) worst = &reading;
+  }
+  return worst;
+}
+
+}  // namespace wanewall

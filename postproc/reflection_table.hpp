@@ -1,0 +1,96 @@
+// The shell audit as numbers: per face and frequency, power through the audit plane and, where the split
+// applies, reflection per polarisation and bin of incidence angle with its floor.
+#pragma once
+
+#include <array>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "geometry/lattice.hpp"
+#include "postproc/plane_power.hpp"
+#include "solver/results.hpp"
+
+namespace wanewall {
+
+/// Returned power relative to outgoing power, with what its floor leaves open. On field level, r =
+/// sqrt(returned / outgoing), f = sqrt(floor / outgoing): the truth lies between |r| - f and r + f.
+struct Reflection {
+  enum class Kind {
+    value,       ///< f <= r/2: read value_db, between low_db and high_db
+    bound,       ///< f > r/2: only "at most high_db" is known
+    no_reading,  ///< nothing outgoing, or the bound is not below 0 dB while f > r/2
+  };
+  Kind kind = Kind::no_reading;
+  double value_db = 0.0;  ///< 20 log r, also where only the bound is known
+  double low_db = 0.0;    ///< 20 log(r - f); -infinity unless kind is value
+  double high_db = 0.0;   ///< 20 log(r + f)
+  double floor_db = 0.0;  ///< 20 log f
+};
+/// Powers in one and the same unit, none negative.
+Reflection reflection_of(double outgoing, double returned, double floor);
+
+struct AngleReading {
+  double outgoing_w_s2 = 0.0, returned_w_s2 = 0.0;
+  /// Outgoing power relative to the face's, both polarisations and all angles [dB]; -infinity where there is
+  /// none.
+  double share_db = 0.0;
+  Reflection reflection;
+  long waves = 0;  ///< plane waves in the bin; 0: the bin is empty
+  /// Outgoing share below -20 dB: what the bin holds is the skirts of other angles.
+  bool not_illuminated = false;
+};
+
+/// The two readings are TE and TM, indexed by Polarisation.
+struct AngleRow {
+  double lo_deg = 0.0, hi_deg = 0.0;
+  std::array<AngleReading, 2> readings;
+  /// 2 (g + N) d tan(theta) > L/2 at the bin's middle: a wave comes back so far to the side, or ends in a
+  /// side shell, that less returns than an infinite face would reflect. L: shortest tapered clear width, (g +
+  /// N) d: from plane 0 to the outer wall.
+  bool walk_off = false;
+};
+
+struct FaceReading {
+  double frequency_hz = 0.0;
+  std::optional<NetPower> net;
+  /// The scene's plane wave through this face's clear cross-section; empty without one or when it runs along
+  /// the face.
+  std::optional<double> incident_w_s2;
+  /// Empty when the face is not split. Powers stand for the clear cross-section.
+  std::vector<AngleRow> rows;
+  double outgoing_w_s2 = 0.0, returned_w_s2 = 0.0;
+  Reflection total;                           ///< both polarisations, all angles
+  std::array<Reflection, 2> by_polarisation;  ///< all angles
+};
+
+struct FaceReport {
+  Side side = Side::x_lo;
+  std::string not_split_because;  ///< empty: the face is split
+  std::string basis;              ///< the functions of the split
+  bool basis_is_exact = false;
+  double permittivity_rel = 1.0, permeability_rel = 1.0, conductivity_s_per_m = 0.0;
+  int shell_cells = 0;
+  double plane_m = 0.0;  ///< coordinate of node plane 0 along the normal
+  double clear_area_m2 = 0.0;
+  std::vector<FaceReading> readings;  ///< one per chosen frequency
+};
+
+struct AuditReport {
+  std::vector<FaceReport> faces;
+};
+
+struct ReportChoice {
+  std::vector<Side> faces;               ///< empty: all that were audited
+  std::vector<std::size_t> frequencies;  ///< indices into AuditRecord::frequencies_hz; empty: all
+  int angle_bins = 9;                    ///< equal bins from 0 to 90 degrees
+};
+
+/// Throws std::invalid_argument when the record's planes do not fit its lattice.
+AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const ReportChoice& choice);
+
+/// A face whose returned power, all angles together, is nearest to being a problem: the largest reading or
+/// bound over the frequencies. Null when there is none.
+const FaceReading* worst_reading(const FaceReport& face);
+
+}  // namespace wanewall
