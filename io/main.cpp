@@ -8,6 +8,7 @@
 #include <new>
 #include <string>
 #include <system_error>
+#include <vector>
 
 #include "io/commands.hpp"
 #include "io/errors.hpp"
@@ -37,18 +38,20 @@ ExitCode report(ExitCode code, const std::string& text) {
   return code;
 }
 
-// Which command the user was in the middle of, so that the hint points to the right help.
+// Names the word that is wrong and the help that fits what the user was doing.
 std::string explain_parse_error(const CLI::App* app, const CLI::Error& error) {
   std::string command = "wanewall";
   for (const CLI::App* sub : app->get_subcommands()) command += " " + sub->get_name();
-  std::string text = std::string("wanewall: ") + error.what() + "\n";
-  if (app->get_subcommands().empty()) {
-    text += "  commands:";
+  const bool no_command = app->get_subcommands().empty();
+  const std::vector<std::string> words = app->remaining();
+  std::string text = "wanewall: ";
+  text += no_command && !words.empty() ? "there is no command " + words.front() : error.what();
+  if (no_command) {
+    text += "\n  allowed:";
     for (const CLI::App* sub : app->get_subcommands([](const CLI::App*) { return true; }))
       text += " " + sub->get_name();
-    text += "\n";
   }
-  return text + "  next: " + command + " --help\n";
+  return text + "\n  next: " + command + " --help\n";
 }
 
 ExitCode run_guarded(const wanewall::Action& action) {

@@ -11,6 +11,7 @@
 #include "io/provenance.hpp"
 #include "io/record.hpp"
 #include "io/scene.hpp"
+#include "io/tables_document.hpp"
 #include "io/terminal.hpp"
 
 namespace wanewall {
@@ -26,6 +27,7 @@ struct RunOptions {
   bool xdmf = false;
   bool quiet = false;
   bool force = false;
+  bool tables = false;
 };
 
 std::string xdmf_path_of(const std::string& record_path) {
@@ -143,6 +145,14 @@ std::string cost_text(const RunResult& result, const Problem& problem) {
                             result.threads == 1 ? "" : "s", name_of(problem.schedule), result.vector_code);
 }
 
+// Made from the file, not from what is still in memory, so that it is the same as `wanewall tables` would
+// say.
+std::string tables_text(const std::string& record_path) {
+  const Record record(record_path);
+  const ReportChoice everything;
+  return tables_markdown(record, audit_report(record.result.audit, record.lattice, everything), everything);
+}
+
 ExitCode run_scene(const RunOptions& options) {
   const std::string started = utc_now();
   const std::string record_path = options.record_path.empty()
@@ -183,6 +193,7 @@ ExitCode run_scene(const RunOptions& options) {
     say(cost_text(result, scene.problem) + "wrote " + record_path + "\n");
     if (options.xdmf) say("wrote " + xdmf_path_of(record_path) + "\n");
   }
+  if (options.tables && code != ExitCode::not_finite) say("\n" + tables_text(record_path));
   return code;
 }
 
@@ -202,6 +213,7 @@ void add_run_command(CLI::App& app, Action& action) {
   command->add_flag("--xdmf", options->xdmf,
                     "Also write an XDMF file beside the record, for general viewers");
   command->add_flag("--force", options->force, "Replace an existing record, once the new one is whole");
+  command->add_flag("--tables", options->tables, "Print the tables at the end, as 'wanewall tables' does");
   command->add_flag("--quiet", options->quiet, "Say nothing unless something is wrong");
   command->footer(
       "Ctrl-C ends the run at the next step and keeps what was computed (exit code 5); a second Ctrl-C ends "

@@ -66,6 +66,13 @@ TEST_CASE("A wrong command line ends with code 2 and points to the help") {
   CHECK(!std::filesystem::exists(folder.path() + "/small.h5"));
 }
 
+TEST_CASE("A command that does not exist is named beside those that do") {
+  const ScratchFolder folder;
+  const Outcome outcome = run_program({"rnu", "small.yaml"}, folder.path());
+  CHECK(has(outcome.err, "no command rnu"));
+  for (const std::string& command : commands) CHECK(has(outcome.err, " " + command));
+}
+
 TEST_CASE("A wrong scene ends with code 3 and names file and line") {
   const ScratchFolder folder;
   folder.write("wrong.yaml", small_scene(40.0) + "no_such_key: 1\n");
@@ -106,6 +113,19 @@ TEST_CASE("A target that cannot be written is found before the run, with code 4"
   CHECK(has(outcome.err, "next:"));
   CHECK(std::filesystem::file_size(folder.path() + "/taken.h5") == kept.size());
   CHECK(std::filesystem::exists(folder.path() + "/endless.yaml"));
+}
+
+TEST_CASE("Even with --force a run does not replace its own scene or a folder") {
+  const ScratchFolder folder;
+  folder.write("endless.yaml", small_scene(1e6));
+  std::filesystem::create_directory(folder.path() + "/is_a_folder.h5");
+  const std::string target = GENERATE("endless.yaml", "is_a_folder.h5");
+  CAPTURE(target);
+  const Outcome outcome = run_program({"run", "endless.yaml", "--record", target, "--force"}, folder.path());
+  CHECK(outcome.exit_code == 4);
+  CHECK(has(outcome.err, target));
+  CHECK(std::filesystem::file_size(folder.path() + "/endless.yaml") == small_scene(1e6).size());
+  CHECK(std::filesystem::is_directory(folder.path() + "/is_a_folder.h5"));
 }
 
 TEST_CASE("A run writes its record and says where") {
