@@ -97,6 +97,7 @@ int main(int argc, char** argv) {
   wanewall::add_run_command(app, action);
   wanewall::add_tables_command(app, action);
   wanewall::add_probe_command(app, action);
+  wanewall::add_speed_command(app, action);
 
   try {
     app.parse(argc, argv);
