@@ -206,3 +206,55 @@ TEST_CASE("A cfs_pml face reflects what the lattice recursion says, both polaris
   CAPTURE(te, theta * 180.0 / pi, cells, kappa_max, measured, expected, steps, reach);
   CHECK(std::abs(measured - expected) < 0.1);
 }
+
+namespace {
+
+/// Reflection of a matched slab at normal incidence by brute force on the lattice's own two equations per
+/// cell.
+Complex slab_reflection(const LayerTable& layer, double cell_m, double dt_s, double omega) {
+  const Complex half_step = std::exp(Complex(0.0, 0.5 * omega * dt_s));
+  const auto admittivity = [&](double sigma) {  // (g - decay/g)/gain for E and, being matched, for H alike
+    const UpdateCoefficients c = update_coefficients(1.0, sigma / eps0_f_per_m, dt_s);
+    return (half_step - c.decay / half_step) / c.gain;
+  };
+  Complex e = 0.0, h = 1.0;  // at the wall
+  for (std::size_t d = static_cast<std::size_t>(layer.cells()); d-- > 0;) {
+    e += cell_m * admittivity(layer.sigma_h_s_per_m[d]) * h;
+    h += cell_m * admittivity(layer.sigma_e_s_per_m[d]) * e;
+  }
+  const double w = lattice_omega(omega, dt_s) / c0_m_per_s;
+  const Complex before = e + cell_m * Complex(0.0, w) * h;
+  const Complex p = std::exp(Complex(0.0, 1.0) * wavenumber_of_lattice(w * w, cell_m) * cell_m);
+  return (e * p - before) / (before - e / p);
+}
+
+}  // namespace
+
+TEST_CASE("A matched slab reflects what its own equations say at normal incidence", "[column][shell]") {
+  const int cells = GENERATE(6, 12);
+  Guide guide;
+  guide.te = false;
+  guide.mode = 0;
+  PolynomialGrading grading;
+  grading.order = 2.0;
+  grading.sigma_max_s_per_m = sigma_max_for_reflection(cells == 6 ? 1e-2 : 1e-4, 2.0, cells * guide.cell_m);
+  const LayerTable layer = polynomial_layer(grading, cells);
+  Problem with_layer = guide.problem(400, layer);
+  set_face(with_layer, Side::z_hi, FaceKind::matched_slab, layer);
+  Problem without = guide.problem(1000, {});
+  const double dt = without.lattice.dt_s, omega = guide.omega_for_angle(0.0, dt);
+  Pulse pulse;
+  pulse.centre_hz = omega / (2.0 * pi);
+  pulse.width_s = 6.0 / omega;
+  pulse.delay_s = pulse_start_in_widths * pulse.width_s;
+  guide.add_source(with_layer, 370, pulse);
+  guide.add_source(without, 370, pulse);
+  const long steps = 560;
+  const Complex incident = mode_amplitude(without, guide, 385, steps, omega);
+  const Complex total = mode_amplitude(with_layer, guide, 385, steps, omega);
+  const double measured = db(std::abs(total - incident) / std::abs(incident));
+  const double expected = db(std::abs(slab_reflection(layer, guide.cell_m, dt, omega)));
+  CAPTURE(cells, measured, expected);
+  CHECK(std::abs(measured - expected) < 0.1);
+  CHECK(expected < -20.0);
+}
