@@ -28,6 +28,10 @@ std::string cells_text(const Index3& n) {
   return fmt::format("{} x {} x {}", n[0], n[1], n[2]);
 }
 
+std::string count_text(double n) {
+  return n < 1e6 ? fmt::format("{:.0f} in all", n) : fmt::format("{:.4g} million", 1e-6 * n);
+}
+
 Index3 clear_cells(const Lattice& lattice) {
   return {lattice.clear_cells(Axis::x).size(), lattice.clear_cells(Axis::y).size(),
           lattice.clear_cells(Axis::z).size()};
@@ -58,8 +62,8 @@ std::string lattice_part(const Scene& scene) {
          aligned_pairs(
              {{"clear volume", fmt::format("{} cells, {} x {} x {}", cells_text(clear_cells(lattice)),
                                            extent[0], extent[1], extent[2])},
-              {"with shell", fmt::format("{} cells, {:.4g} million", cells_text(lattice.cells()),
-                                         1e-6 * lattice.n_cells())},
+              {"with shell",
+               fmt::format("{} cells, {}", cells_text(lattice.cells()), count_text(lattice.n_cells()))},
               {"cell", fmt::format("{} x {} x {}", cell[0], cell[1], cell[2])},
               {"time step",
                fmt::format("{}, Courant number {}", format_quantity(lattice.dt_s, Family::time, 6),
@@ -93,8 +97,8 @@ std::string media_part(const Scene& scene) {
   for (int m : media_in_use(scene.problem)) {
     const Medium& medium = scene.problem.media[static_cast<std::size_t>(m)];
     if (medium.is_perfect()) {
-      rows.push_back(
-          {medium.name, medium.perfect_electric ? "perfect conductor" : "perfect magnetic conductor"});
+      rows.push_back({medium.name +
+                      (medium.perfect_electric ? " (perfect conductor)" : " (perfect magnetic conductor)")});
       continue;
     }
     const WaveIn at_lo = wave_in(medium, scene.band_lo_hz), at_hi = wave_in(medium, scene.band_hi_hz);
@@ -159,15 +163,15 @@ std::string illumination_part(const Scene& scene) {
   if (pulse == nullptr) return "Illumination\n  none: all fields will be zero\n";
   rows.push_back({"pulse", pulse_text(*pulse)});
   std::string text = "Illumination\n" + aligned_pairs(rows);
-  std::vector<std::string> at{"frequency"}, level{"spectrum below its peak"};
+  std::vector<std::string> at{"frequency"}, level{"spectrum, peak at 0 dB"};
   constexpr int points = 9;
   const double peak_s = spectrum_peak_s(*pulse);
   for (int n = 0; n < points; ++n) {
     const double f_hz = scene.band_lo_hz + (scene.band_hi_hz - scene.band_lo_hz) * n / (points - 1);
     at.push_back(frequency_text(f_hz));
-    level.push_back(fmt::format(
-        "{:.1f} dB",
-        20.0 * std::log10(std::max(std::abs(spectrum(*pulse, 2.0 * pi * f_hz)) / peak_s, 1e-15))));
+    const double level_db =
+        20.0 * std::log10(std::max(std::abs(spectrum(*pulse, 2.0 * pi * f_hz)) / peak_s, 1e-15));
+    level.push_back(fmt::format("{:.1f} dB", level_db > -0.05 ? 0.0 : level_db));
   }
   return text + aligned({at, level});
 }

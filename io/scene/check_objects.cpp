@@ -28,20 +28,27 @@ IndexRange within(const Lattice& lattice, Component c, Axis a, double lo_m, doub
   return range;
 }
 
+/// Rows of edges that are looked at before an object gets the benefit of the doubt.
+constexpr long most_rows = 2'000'000;
+
 /// Whether the midpoint of any edge lies in the shape.
 bool holds_an_edge(const Lattice& lattice, const Shape& shape, double tolerance_m) {
   const Bounds bounds = bounds_of(shape);
+  long rows = 0;
   for (Axis of_edge : all_axes) {
     const Component c = electric(of_edge);
     std::array<IndexRange, 3> range;
     for (Axis a : all_axes) {
       const auto i = static_cast<std::size_t>(index_of(a));
       range[i] = within(lattice, c, a, bounds.lo_m[i] - tolerance_m, bounds.hi_m[i] + tolerance_m);
+      const bool endless = !std::isfinite(bounds.lo_m[i]) && !std::isfinite(bounds.hi_m[i]);
+      if (endless && a != Axis::z) range[i].end = std::min(range[i].end, range[i].begin + 1);  // all alike
     }
     for (int i = range[0].begin; i < range[0].end; ++i)
       for (int j = range[1].begin; j < range[1].end; ++j) {
         const Interval inside = z_interval(shape, lattice.position_m(c, Axis::x, i),
                                            lattice.position_m(c, Axis::y, j), tolerance_m);
+        if (++rows > most_rows) return true;
         if (!inside.empty() && within(lattice, c, Axis::z, inside.lo_m, inside.hi_m).size() > 0) return true;
       }
   }

@@ -11,8 +11,8 @@
 namespace wanewall::scene {
 namespace {
 
-/// Work that a check may take: vertical lines times objects.
-constexpr double most_line_tests = 2e7;
+/// Work that a check may take on a group of faces: vertical lines times objects and heights.
+constexpr double most_tests = 5e7;
 constexpr int nothing_yet = -2;
 /// Half cells beyond the surface's ends that must be in the same medium for the wave to enter cleanly.
 constexpr int beyond = 3;
@@ -28,6 +28,8 @@ class Surface {
   Surface(const Problem& problem, const PlaneWave& wave)
       : problem_(problem), wave_(wave), lattice_(problem.lattice) {
     tolerance_m_ = 1e-6 * lattice_.along(Axis::z).smallest_cell_m();
+    for (Axis a : all_axes)
+      cell_m_[static_cast<std::size_t>(index_of(a))] = lattice_.along(a).largest_cell_m();
     // Heights in half cells.
     first_ = 2 * wave.box_lo[2] - beyond;
     seen_.assign(static_cast<std::size_t>(2 * (wave.box_hi[2] - wave.box_lo[2] + beyond) + 1), {});
@@ -38,11 +40,10 @@ class Surface {
   /// Looks at the whole surface. False when two media meet at one height; `culprit` is then an object that
   /// does it.
   bool depends_on_z_only(int& culprit) {
-    const int stride = stride_of_lines();
     for (Axis a : {Axis::x, Axis::y})
       for (bool high : {false, true})
-        if (exists(side_of(a, high)) && !scan_side(a, high, stride, culprit)) return false;
-    return scan_ends(stride, culprit);
+        if (exists(side_of(a, high)) && !scan_side(a, high, culprit)) return false;
+    return scan_ends(culprit);
   }
 
   bool is_homogeneous() const {
@@ -90,7 +91,7 @@ class Surface {
     bool inside = true;
     for (Axis a : all_axes) {
       const auto i = static_cast<std::size_t>(index_of(a));
-      const double cell_m = lattice_.along(a).largest_cell_m();
+      const double cell_m = cell_m_[i];
       const double lo_m = lattice_.along(a).node_m(wave_.box_lo[i]),
                    hi_m = lattice_.along(a).node_m(wave_.box_hi[i]);
       if (bounds.hi_m[i] < lo_m - 2.0 * cell_m || bounds.lo_m[i] > hi_m + 2.0 * cell_m) return false;
@@ -100,11 +101,20 @@ class Surface {
     return !inside;
   }
 
-  int stride_of_lines() const {
-    const double across = 2.0 * (wave_.box_hi[0] - wave_.box_lo[0]) + 3.0,
-                 along = 2.0 * (wave_.box_hi[1] - wave_.box_lo[1]) + 3.0;
-    const double tests = across * along * static_cast<double>(std::max<std::size_t>(1, near_.size()));
-    return std::max(1, static_cast<int>(std::ceil(std::sqrt(tests / most_line_tests))));
+  double half_cells(Axis a) const {
+    const auto i = static_cast<std::size_t>(index_of(a));
+    return 2.0 * (wave_.box_hi[i] - wave_.box_lo[i]) + 1.0;
+  }
+  /// Strides, in half cells, that keep the work on the side faces and on the end faces within bounds.
+  int stride_of_sides() const {
+    const double lines = 6.0 * (half_cells(Axis::x) + half_cells(Axis::y));
+    const double tests = lines * (half_cells(Axis::z) + 1.0) * static_cast<double>(near_.size() + 1);
+    return std::max(1, static_cast<int>(std::ceil(tests / most_tests)));
+  }
+  int stride_of_ends() const {
+    const double lines = 2.0 * half_cells(Axis::x) * half_cells(Axis::y);
+    const double tests = lines * (2.0 * beyond + 1.0) * static_cast<double>(near_.size() + 1);
+    return std::max(1, static_cast<int>(std::ceil(std::sqrt(tests / most_tests))));
   }
 
   /// Follows one vertical line through the heights [begin, end) and compares it with what the lines before it
@@ -148,7 +158,8 @@ class Surface {
   }
 
   /// A face across x or y, on the surface and half a cell to both sides.
-  bool scan_side(Axis a, bool high, int stride, int& culprit) {
+  bool scan_side(Axis a, bool high, int& culprit) {
+    const int stride = stride_of_sides();
     const Axis across = a == Axis::x ? Axis::y : Axis::x;
     const auto i = static_cast<std::size_t>(index_of(a)), o = static_cast<std::size_t>(index_of(across));
     const int node = 2 * (high ? wave_.box_hi[i] : wave_.box_lo[i]);
@@ -164,7 +175,8 @@ class Surface {
   }
 
   /// The lower and upper face and the heights next to them.
-  bool scan_ends(int stride, int& culprit) {
+  bool scan_ends(int& culprit) {
+    const int stride = stride_of_ends();
     const int last = static_cast<int>(seen_.size());
     const bool lower = exists(Side::z_lo), upper = exists(Side::z_hi);
     if (!lower && !upper) return true;
@@ -181,6 +193,7 @@ class Surface {
   const PlaneWave& wave_;
   const Lattice& lattice_;
   double tolerance_m_ = 0.0;
+  Vec3 cell_m_{};
   int first_ = 0;
   std::vector<Seen> seen_;
   std::vector<int> near_;  ///< objects that may touch the surface, in painting order

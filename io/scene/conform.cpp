@@ -9,7 +9,7 @@
 namespace wanewall::scene {
 namespace {
 
-constexpr std::size_t enough_complaints = 100;
+constexpr std::size_t enough_complaints = 100;  ///< after which the rest is not looked at
 
 class Checker {
  public:
@@ -17,6 +17,7 @@ class Checker {
 
   void block(const Node& node, const Block& declared, const std::string& path) {
     for (const Entry& entry : node.entries) {
+      if (complaints_.size() >= enough_complaints) return;
       const std::string inner = path.empty() ? shown(entry.key) : path + "." + shown(entry.key);
       if (const Key* key = declared.find(entry.key))
         form(*entry.value, key->form, inner);

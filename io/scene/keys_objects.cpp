@@ -115,7 +115,7 @@ const Block& medium_block() {
        with_default("perfect_conductor", yes_no(), "false", "Tangential E is zero on it."),
        with_default("perfect_magnetic_conductor", yes_no(), "false", "Tangential H is zero on it.")},
       {},
-      {{"perfect_conductor", "perfect_magnetic_conductor"}},
+      {},
       {},
       {}};
   return b;

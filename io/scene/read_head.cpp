@@ -33,6 +33,10 @@ void read_media(Cursor& root, Scene& scene) {
     medium.name = name;
     medium.perfect_electric = block.yes("perfect_conductor");
     medium.perfect_magnetic = block.yes("perfect_magnetic_conductor");
+    if (medium.perfect_electric && medium.perfect_magnetic)
+      block.reject_text(
+          "perfect_magnetic_conductor", fmt::format("{} is both kinds of perfect conductor", block.path()),
+          "true for one of perfect_conductor, perfect_magnetic_conductor", "remove one of the two");
     if (medium.is_perfect()) {
       for (const char* key : {"permittivity", "permeability", "conductivity", "magnetic_conductivity"})
         if (block.has(key))
@@ -87,9 +91,10 @@ Bounds clear_bounds(const Lattice& lattice, double slack_cells) {
   Bounds bounds;
   for (Axis a : all_axes) {
     const auto i = static_cast<std::size_t>(index_of(a));
-    const double slack_m = slack_cells * lattice.along(a).smallest_cell_m();
-    bounds.lo_m[i] = lattice.along(a).node_m(lattice.clear_node(side_of(a, false))) - slack_m;
-    bounds.hi_m[i] = lattice.along(a).node_m(lattice.clear_node(side_of(a, true))) + slack_m;
+    const MeshLines& lines = lattice.along(a);
+    const IndexRange clear = lattice.clear_cells(a);
+    bounds.lo_m[i] = lines.node_m(clear.begin) - slack_cells * lines.cell_m(clear.begin);
+    bounds.hi_m[i] = lines.node_m(clear.end) + slack_cells * lines.cell_m(clear.end - 1);
   }
   return bounds;
 }

@@ -84,7 +84,7 @@ void read_lattice(Cursor& root, Scene& scene) {
         face.reject("cells", fmt::format("0 for a face of kind {}", name_of(kind)), "remove it");
       continue;
     }
-    refuse_layer_keys(face, kind);
+    if (kind == FaceKind::matched_slab) refuse_layer_keys(face, kind);
     lattice.shell_cells[s] = static_cast<int>(face.whole("cells"));
     if (lattice.shell_cells[s] == 0)
       face.reject("cells", "a whole number from 1 to 64 for an absorbing face",

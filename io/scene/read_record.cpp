@@ -10,6 +10,7 @@
 namespace wanewall::scene {
 namespace {
 
+constexpr double rounding_cells = 1e-6;  ///< by which a position may miss the clear volume
 constexpr std::size_t most_points = 10000;
 constexpr int least_audit_depth = 4;  ///< cells; the audit looks at three planes
 
@@ -30,7 +31,7 @@ std::vector<Component> components_of(const std::vector<std::string>& words) {
 Vec3 inside(const Problem& problem, const Vec3& point_m, const std::string& file, Place place,
             const std::string& path) {
   const Bounds clear = clear_bounds(problem.lattice, 0.0);
-  if (!lies_in(clear_bounds(problem.lattice, 1e-6), point_m))
+  if (!lies_in(clear_bounds(problem.lattice, rounding_cells), point_m))
     reject(file,
            {place,
             fmt::format("{} = [{}, {}, {}] is not allowed", path, format_quantity(point_m[0], Family::length),
@@ -54,16 +55,19 @@ SnapshotRequest read_snapshot(Cursor& block, const std::string& name) {
 SnapshotRequest read_plane(Cursor& block, const std::string& name, const Scene& scene) {
   SnapshotRequest request = read_snapshot(block, name);
   const Bounds clear = clear_bounds(scene.problem.lattice, 0.0);
-  Vec3 on_plane = clear.lo_m;
+  const Bounds reach = clear_bounds(scene.problem.lattice, rounding_cells);
   for (Axis a : all_axes) {
-    if (!block.has(name_of(a))) continue;
-    request.normal = a;
+    const std::string_view key = name_of(a);
+    if (!block.has(key)) continue;
     const auto i = static_cast<std::size_t>(index_of(a));
-    on_plane[i] = block.quantity(name_of(a));
-    on_plane = inside(scene.problem, on_plane, scene.file, block.place(name_of(a)), block.path());
+    const double at_m = block.quantity(key);
+    if (!(reach.lo_m[i] <= at_m && at_m <= reach.hi_m[i]))
+      block.reject(key, "positions in the clear volume: " + bounds_text(clear),
+                   "move it or widen clear_volume");
+    request.normal = a;
     request.lo_m = clear.lo_m;
     request.hi_m = clear.hi_m;
-    request.lo_m[i] = request.hi_m[i] = on_plane[i];
+    request.lo_m[i] = request.hi_m[i] = std::clamp(at_m, clear.lo_m[i], clear.hi_m[i]);
   }
   return request;
 }
