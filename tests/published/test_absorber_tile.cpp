@@ -64,7 +64,8 @@ TEST_CASE("On exact modes the audit reads what the shell's lattice recursion say
   NoSink sink;
   NoMonitor monitor;
   const RunResult result = run(scene.problem, sink, monitor);
-  for (const FaceReading& reading : audit_report(result.audit, lattice, {}).faces.at(0).readings) {
+  const AuditReport report = audit_report(result.audit, lattice, {});
+  for (const FaceReading& reading : report.faces.at(0).readings) {
     const double omega = 2.0 * pi * reading.frequency_hz;
     const double w = lattice_omega(omega, lattice.dt_s) / c0_m_per_s;
     const double expected = db(std::abs(layer_reflection(face.layer, d, lattice.dt_s, omega, w * w)));
