@@ -38,6 +38,39 @@ std::string provenance_text(const Record& record) {
   return text;
 }
 
+constexpr const char* method_of_power = R"(## How to read the shell tables
+
+- Powers are 1/2 Re(E x H*) of Fourier sums in W s^2 = J/Hz, outwards through the clear cross-section on the audit
+  plane, two cells inside the shell. Four times that is the energy per hertz. `net` is the direct sum over the lattice
+  and holds for any media.
+)";
+
+constexpr const char* method_of_split =
+    R"(- `outgoing` and `returned` are split from tangential E on two adjacent planes, plane wave by plane wave, with the
+  lattice's own wavenumbers. R = returned / outgoing. `share` is a part of the face's outgoing power.
+- `floor` is what R would read by error alone, from a third plane of the same run, with a margin of 6 dB. The range
+  that it leaves open around R, 20 log(r - f) to 20 log(r + f), is in the CSV tables.
+- `< x (floor)`: the floor is within 6 dB of the reading or above it, so only the bound x is known. `no reading`: not
+  even a bound below 0 dB.
+- `not illuminated`: outgoing share below -20 dB, so that skirts of other angles are read.
+- TE has E along the face, TM has H along it. At exactly normal incidence TM holds E along the first tangential axis
+  (in the order x, y, z) and TE along the second.
+)";
+
+constexpr const char* method_of_tapers =
+    R"(- Where the face is not periodic, the clear part is read under tapers: `outgoing` and `returned` take its middle for
+  all of it, and the floor rises towards grazing. For the exact lattice field of a dipole two wavelengths before a face
+  six wavelengths wide it is -55, -52, -44, -36, -15 dB in the bins at 5, 15, 25, 35, 45 degrees, with no reading
+  beyond. Narrow faces do worse, wide ones better. To check a better shell than the floor shows, compare with a run
+  whose face is much thicker.
+- `walk-off`: a wave at that angle comes back more than half the clear width to the side, or ends in a side shell. Less
+  returns than an infinite face would reflect.
+)";
+
+constexpr const char* method_in_conductors =
+    R"(- In a conducting medium the outgoing and the returned wave also exchange power, so `net` is not their difference.
+)";
+
 std::string method_text(const AuditReport& report) {
   bool any_split = false, any_taper = false, any_lossy = false;
   for (const FaceReport& face : report.faces) {
@@ -46,50 +79,10 @@ std::string method_text(const AuditReport& report) {
     any_taper = any_taper || !face.basis_is_exact;
     any_lossy = any_lossy || face.conductivity_s_per_m > 0.0;
   }
-  std::string text =
-      "## How to read the shell tables\n\n"
-      "- Powers are 1/2 Re(E x H*) of Fourier sums in W s^2 = J/Hz, outwards through the clear cross-section "
-      "on "
-      "the audit plane,\n  two cells inside the shell. Four times that is the energy per hertz. `net` is the "
-      "direct "
-      "sum over the lattice and holds\n  for any media.\n";
-  if (any_split)
-    text +=
-        "- `outgoing` and `returned` are split from tangential E on two adjacent planes, plane wave by plane "
-        "wave, with "
-        "the\n  lattice's own wavenumbers. R = returned / outgoing. `share` is a bin's part of the face's "
-        "outgoing "
-        "power.\n"
-        "- `floor` is what R would read by error alone, from a third plane of the same run, with a margin of "
-        "6 dB. "
-        "Of R itself the\n  floor leaves the range 20 log(r - f) to 20 log(r + f) open, which is in "
-        "reflection.csv.\n"
-        "- `< x (floor)`: the floor is within 6 dB of the reading or above it, so only the bound x is known. "
-        "`no "
-        "reading`: not\n  even a bound below 0 dB.\n"
-        "- `not illuminated`: outgoing share below -20 dB, so the bin holds the skirts of other angles.\n"
-        "- TE has E along the face, TM has H along it. At exactly normal incidence TM holds E along the "
-        "first "
-        "tangential axis\n  (in the order x, y, z) and TE along the second.\n";
-  if (any_taper)
-    text +=
-        "- Where the face is not periodic, the clear part is read under tapers, and the floor rises towards "
-        "grazing: "
-        "for the\n  exact lattice field of a dipole two wavelengths before a face six wavelengths wide it is "
-        "-55, -52, "
-        "-44, -36, -15 dB\n  in the bins at 5, 15, 25, 35, 45 degrees, and there is no reading beyond. "
-        "Narrow faces "
-        "do worse, wide ones better.\n  To check a better shell than the floor shows, compare with a run "
-        "whose face "
-        "is much thicker.\n"
-        "- `walk-off`: a wave at that angle comes back more than half the clear width to the side, or ends "
-        "in a side "
-        "shell. Less\n  returns than an infinite face would reflect.\n";
-  if (any_lossy)
-    text +=
-        "- In a conducting medium the outgoing and the returned wave also exchange power, so `net` is not "
-        "their "
-        "difference.\n";
+  std::string text = method_of_power;
+  if (any_split) text += method_of_split;
+  if (any_taper) text += method_of_tapers;
+  if (any_lossy) text += method_in_conductors;
   return text + "\n";
 }
 
@@ -107,7 +100,7 @@ std::string face_heading(const Record& record, const FaceReport& face) {
 
 std::string face_text(const Record& record, const FaceReport& face) {
   std::string text = face_heading(record, face) + to_markdown(power_table(face)) + "\n";
-  if (!face.not_split_because.empty()) return text;
+  if (!has_angles(face)) return text;
   for (const FaceReading& reading : face.readings)
     text += fmt::format("{}, face {}:\n\n", frequency_text(reading.frequency_hz), name_of(face.side)) +
             to_markdown(angle_table(reading)) + "\n";
@@ -120,12 +113,12 @@ std::string warnings_text(const AuditReport& report) {
   for (const FaceReport& face : report.faces) {
     if (!face.basis_is_exact) continue;
     for (const FaceReading& reading : face.readings) {
-      if (!(reading.outgoing_w_s2 > 0.0) || reading.total.floor_db <= -60.0) continue;
+      if (!(reading.total.outgoing_w_s2 > 0.0) || reading.total.reflection.floor_db <= -60.0) continue;
       text += fmt::format(
           "**Caution:** face {}, {}: the third plane's floor is {:.1f} dB. The record may be too short, or "
           "something "
           "crosses the plane.\n\n",
-          name_of(face.side), frequency_text(reading.frequency_hz), reading.total.floor_db);
+          name_of(face.side), frequency_text(reading.frequency_hz), reading.total.reflection.floor_db);
     }
   }
   return text;

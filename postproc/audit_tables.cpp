@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 
 #include "postproc/face_split.hpp"
@@ -67,6 +68,14 @@ std::string notes_of(const AngleRow& row) {
   return notes;
 }
 
+std::string sum_text(const AngleSum& sum) {
+  return sum.not_illuminated ? "not illuminated" : reflection_text(sum.reflection);
+}
+
+Cell floor_of(const AngleSum& sum) {
+  return sum.outgoing_w_s2 > 0.0 ? Cell{sum.reflection.floor_db} : Cell{};
+}
+
 bool is_empty(const AngleRow& row) {
   return row.readings[0].waves == 0;
 }
@@ -88,23 +97,26 @@ std::string reflection_text(const Reflection& reflection) {
 
 Table overview_table(const AuditReport& report) {
   Table table;
-  table.columns = {face_column,
-                   {"shell", "cells", NumberStyle::whole},
-                   {"worst R over frequency", "dB"},
-                   {"floor there", "dB", NumberStyle::one_decimal},
-                   {"at", "GHz"},
-                   {"remark", ""}};
+  table.columns = {face_column, {"shell", "cells", NumberStyle::whole}};
+  for (const char* range : {"worst R to 40 deg", "worst R, all angles"}) {
+    table.columns.push_back({range, "dB"});
+    table.columns.push_back({"floor", "dB", NumberStyle::one_decimal});
+    table.columns.push_back({"at", "GHz"});
+  }
+  table.columns.push_back({"remark", ""});
   for (const FaceReport& face : report.faces) {
     std::vector<Cell> row{text(name_of(face.side)), double(face.shell_cells)};
-    if (const FaceReading* worst = worst_reading(face)) {
-      row.insert(row.end(), {reflection_text(worst->total), worst->total.floor_db, worst->frequency_hz * 1e-9,
-                             std::string()});
-    } else {
-      row.insert(row.end(),
-                 {Cell{}, Cell{}, Cell{},
-                  face.not_split_because.empty() ? text("nothing outgoing")
-                                                 : text("net power only: " + face.not_split_because)});
+    for (AngleRange range : {AngleRange::near_normal, AngleRange::all}) {
+      if (const FaceReading* worst = worst_reading(face, range)) {
+        const Reflection& r = sum_over(*worst, range).reflection;
+        row.insert(row.end(), {reflection_text(r), r.floor_db, worst->frequency_hz * 1e-9});
+      } else {
+        row.resize(row.size() + 3);
+      }
     }
+    row.push_back(!face.not_split_because.empty() ? text("net power only: " + face.not_split_because)
+                  : worst_reading(face, AngleRange::all) == nullptr ? text("nothing outgoing")
+                                                                    : text(""));
     table.rows.push_back(std::move(row));
   }
   return table;
@@ -119,25 +131,37 @@ Table power_table(const FaceReport& face) {
     for (const char* name : {"outgoing", "returned"}) table.columns.push_back({name, "W s^2"});
   table.columns.push_back({"net", "W s^2"});
   if (is_split) {
-    for (const char* name : {"R", "R of TE", "R of TM"}) table.columns.push_back({name, "dB"});
-    table.columns.push_back({"floor of R", "dB", NumberStyle::one_decimal});
+    table.columns.push_back({"R to 40 deg", "dB"});
+    table.columns.push_back({"floor", "dB", NumberStyle::one_decimal});
+    for (const char* name : {"R, all angles", "R of TE", "R of TM"}) table.columns.push_back({name, "dB"});
+    table.columns.push_back({"floor, all angles", "dB", NumberStyle::one_decimal});
     if (with_incident) table.columns.push_back({"outgoing / incident", "dB", NumberStyle::one_decimal});
   }
   if (with_incident) table.columns.push_back({"net / incident", "dB", NumberStyle::one_decimal});
 
   for (const FaceReading& reading : face.readings) {
     std::vector<Cell> row{reading.frequency_hz * 1e-9};
-    if (is_split) row.insert(row.end(), {reading.outgoing_w_s2, reading.returned_w_s2});
+    if (is_split) row.insert(row.end(), {reading.total.outgoing_w_s2, reading.total.returned_w_s2});
     row.push_back(number(clear_net(reading)));
     if (is_split) {
-      row.insert(row.end(), {reflection_text(reading.total), reflection_text(reading.by_polarisation[0]),
-                             reflection_text(reading.by_polarisation[1]), reading.total.floor_db});
-      if (with_incident) row.push_back(level_db(reading.outgoing_w_s2, reading.incident_w_s2));
+      row.insert(row.end(),
+                 {sum_text(reading.near_normal), floor_of(reading.near_normal),
+                  reflection_text(reading.total.reflection), reflection_text(reading.by_polarisation[0]),
+                  reflection_text(reading.by_polarisation[1]), floor_of(reading.total)});
+      if (with_incident) row.push_back(level_db(reading.total.outgoing_w_s2, reading.incident_w_s2));
     }
     if (with_incident) row.push_back(net_level(reading));
     table.rows.push_back(std::move(row));
   }
   return table;
+}
+
+bool has_angles(const FaceReport& face) {
+  for (const FaceReading& reading : face.readings)
+    if (std::count_if(reading.rows.begin(), reading.rows.end(),
+                      [](const AngleRow& row) { return !is_empty(row); }) > 1)
+      return true;
+  return false;
 }
 
 Table angle_table(const FaceReading& reading) {
@@ -165,9 +189,18 @@ Table power_rows(const AuditReport& report) {
   Table table;
   table.columns = {face_column,           {"frequency", "Hz"},    {"plane position along normal", "m"},
                    {"clear area", "m^2"}, {"net clear", "W s^2"}, {"net whole", "W s^2"},
-                   {"incident", "W s^2"}, {"outgoing", "W s^2"},  {"returned", "W s^2"},
-                   {"R", "dB"},           {"R low", "dB"},        {"R high", "dB"},
-                   {"reading", ""},       {"floor", "dB"},        {"remark", ""}};
+                   {"incident", "W s^2"}};
+  for (const char* range : {"", " to 40 deg"}) {
+    const auto name = [range](const char* what) { return std::string(what) + range; };
+    table.columns.insert(table.columns.end(), {{name("outgoing"), "W s^2"},
+                                               {name("returned"), "W s^2"},
+                                               {name("R"), "dB"},
+                                               {name("R low"), "dB"},
+                                               {name("R high"), "dB"},
+                                               {name("reading"), ""},
+                                               {name("floor"), "dB"}});
+  }
+  table.columns.push_back({"remark", ""});
   for (const FaceReport& face : report.faces) {
     for (const FaceReading& reading : face.readings) {
       std::vector<Cell> row{text(name_of(face.side)),
@@ -178,11 +211,14 @@ Table power_rows(const AuditReport& report) {
                             reading.net ? Cell{reading.net->whole_w_s2} : Cell{},
                             number(reading.incident_w_s2)};
       if (face.not_split_because.empty()) {
-        const Reflection& r = reading.total;
-        const bool any = reading.outgoing_w_s2 > 0.0;
-        row.insert(row.end(), {reading.outgoing_w_s2, reading.returned_w_s2, any ? Cell{r.value_db} : Cell{},
-                               any ? Cell{r.low_db} : Cell{}, any ? Cell{r.high_db} : Cell{}, name_of(r.kind),
-                               any ? Cell{r.floor_db} : Cell{}});
+        for (AngleRange range : {AngleRange::all, AngleRange::near_normal}) {
+          const AngleSum& sum = sum_over(reading, range);
+          const Reflection& r = sum.reflection;
+          row.insert(row.end(), {sum.outgoing_w_s2, sum.returned_w_s2});
+          row.insert(row.end(),
+                     {Cell{r.value_db}, Cell{r.low_db}, Cell{r.high_db}, name_of(r.kind), Cell{r.floor_db}});
+          if (!(sum.outgoing_w_s2 > 0.0)) std::fill(row.end() - 5, row.end(), Cell{});
+        }
       } else {
         row.resize(table.columns.size() - 1);
       }

@@ -35,6 +35,12 @@ AngleReading reading_of(const SplitPower& power, double face_outgoing) {
   return reading;
 }
 
+AngleSum angle_sum(const SplitPower& power, double face_outgoing) {
+  const AngleReading reading = reading_of(power, face_outgoing);
+  return {reading.outgoing_w_s2, reading.returned_w_s2, reading.share_db, reading.reflection,
+          reading.not_illuminated};
+}
+
 // Distance that a wave travels along the normal from plane 0 to the outer wall [m].
 double depth_m(const Lattice& lattice, const AuditFace& face) {
   const MeshLines& lines = lattice.along(axis_of(face.side));
@@ -46,12 +52,13 @@ void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& fa
                const LatticeMedium& medium, const WaveBasis& basis, int angle_bins) {
   const FaceSplit split = split_planes(tangential_planes(lattice, face, f), cell_outside_m(lattice, face, 0),
                                        medium, basis, angle_bins);
-  SplitPower all = split.totals[0];
+  SplitPower all = split.totals[0], near;
   all += split.totals[1];
-  reading.outgoing_w_s2 = all.outgoing;
-  reading.returned_w_s2 = all.returned;
-  reading.total = reflection_of(all.outgoing, all.returned, all.floor);
-
+  for (int bin = 0; bin < angle_bins; ++bin)
+    if (90.0 * (bin + 1) <= near_normal_deg * angle_bins)
+      for (const auto& bins : split.bins) near += bins[static_cast<std::size_t>(bin)];
+  reading.total = angle_sum(all, all.outgoing);
+  reading.near_normal = angle_sum(near, all.outgoing);
   double tapered_width_m = infinity;
   for (double width_m : basis.tapered_width_m)
     if (width_m > 0.0) tapered_width_m = std::min(tapered_width_m, width_m);
@@ -161,13 +168,19 @@ AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const
   return report;
 }
 
-const FaceReading* worst_reading(const FaceReport& face) {
-  const auto level_db = [](const FaceReading& reading) {
-    return reading.total.kind == Reflection::Kind::value ? reading.total.value_db : reading.total.high_db;
+const AngleSum& sum_over(const FaceReading& reading, AngleRange range) {
+  return range == AngleRange::all ? reading.total : reading.near_normal;
+}
+
+const FaceReading* worst_reading(const FaceReport& face, AngleRange range) {
+  const auto level_db = [range](const FaceReading& reading) {
+    const Reflection& r = sum_over(reading, range).reflection;
+    return r.kind == Reflection::Kind::value ? r.value_db : r.high_db;
   };
   const FaceReading* worst = nullptr;
   for (const FaceReading& reading : face.readings) {
-    if (reading.rows.empty() || !(reading.outgoing_w_s2 > 0.0)) continue;
+    const AngleSum& sum = sum_over(reading, range);
+    if (reading.rows.empty() || !(sum.outgoing_w_s2 > 0.0) || sum.not_illuminated) continue;
     if (worst == nullptr || level_db(reading) > level_db(*worst)) worst = &reading;
   }
   return worst;

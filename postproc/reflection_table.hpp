@@ -51,6 +51,17 @@ struct AngleRow {
   bool walk_off = false;
 };
 
+/// What a face reads over a range of angles, both polarisations together.
+struct AngleSum {
+  double outgoing_w_s2 = 0.0, returned_w_s2 = 0.0;
+  double share_db = 0.0;  ///< of the face's outgoing power
+  Reflection reflection;
+  bool not_illuminated = false;
+};
+
+/// The range in which a tapered basis still reads well.
+inline constexpr double near_normal_deg = 40.0;
+
 struct FaceReading {
   double frequency_hz = 0.0;
   std::optional<NetPower> net;
@@ -59,8 +70,8 @@ struct FaceReading {
   std::optional<double> incident_w_s2;
   /// Empty when the face is not split. Powers stand for the clear cross-section.
   std::vector<AngleRow> rows;
-  double outgoing_w_s2 = 0.0, returned_w_s2 = 0.0;
-  Reflection total;                           ///< both polarisations, all angles
+  AngleSum total;                             ///< all angles
+  AngleSum near_normal;                       ///< bins up to near_normal_deg
   std::array<Reflection, 2> by_polarisation;  ///< all angles
 };
 
@@ -89,8 +100,10 @@ struct ReportChoice {
 /// Throws std::invalid_argument when the record's planes do not fit its lattice.
 AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const ReportChoice& choice);
 
-/// A face whose returned power, all angles together, is nearest to being a problem: the largest reading or
-/// bound over the frequencies. Null when there is none.
-const FaceReading* worst_reading(const FaceReport& face);
+/// The reading whose reflection, or bound, is the largest over the frequencies: over all angles or near the
+/// normal. Null when the face is not split or not illuminated.
+enum class AngleRange { all, near_normal };
+const FaceReading* worst_reading(const FaceReport& face, AngleRange range);
+const AngleSum& sum_over(const FaceReading& reading, AngleRange range);
 
 }  // namespace wanewall
