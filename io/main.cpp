@@ -25,6 +25,7 @@ constexpr const char* examples = R"(Examples:
   wanewall run drum.yaml                        compute it; writes drum.h5
   wanewall tables drum.h5                       reflection, power and probe tables
   wanewall probe drum.h5 --at "0 m, 0 m, 5 cm"  field at a point of the stored snapshots
+  wanewall speed                                how fast this machine is
 
 Exit codes:
   0 done   1 a fault of the program   2 the command line is wrong   3 the scene is wrong

@@ -3,6 +3,7 @@
 #include <fmt/chrono.h>
 #include <fmt/format.h>
 #include <sys/utsname.h>
+#include <unistd.h>
 
 #include <chrono>
 #include <fstream>
@@ -67,6 +68,12 @@ Provenance provenance_of_program() {
   p.processor = processor_text();
   p.host_system = host_system_text();
   return p;
+}
+
+double machine_memory_bytes() {
+  const long pages = sysconf(_SC_PHYS_PAGES);
+  const long page_bytes = sysconf(_SC_PAGE_SIZE);
+  return pages > 0 && page_bytes > 0 ? static_cast<double>(pages) * static_cast<double>(page_bytes) : 0.0;
 }
 
 std::string version_text() {

@@ -14,6 +14,9 @@ std::string utc_now();
 /// system. Times, threads, vector code and schedule are left to the run.
 Provenance provenance_of_program();
 
+/// Memory of this machine [bytes]; 0 when it does not say.
+double machine_memory_bytes();
+
 /// What `--version` prints: version, build and compiler on one line each.
 std::string version_text();
 

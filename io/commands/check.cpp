@@ -1,13 +1,12 @@
 // wanewall check: what a scene will build, and whether it can work.
-#include <unistd.h>
-
+#include <iostream>
 #include <memory>
 #include <string>
 
 #include "io/commands.hpp"
+#include "io/provenance.hpp"
 #include "io/scene.hpp"
 #include "io/scene/build_report.hpp"
-#include "io/terminal.hpp"
 
 namespace wanewall {
 namespace {
@@ -19,21 +18,18 @@ struct CheckOptions {
   bool reference = false;
 };
 
-double machine_memory_bytes() {
-  return static_cast<double>(sysconf(_SC_PHYS_PAGES)) * static_cast<double>(sysconf(_SC_PAGE_SIZE));
-}
-
 ExitCode check(const CheckOptions& options) {
   if (options.schema) {
-    say(scene_schema_json());
+    std::cout << scene_schema_json();
     return ExitCode::done;
   }
   if (options.reference) {
-    say(scene_reference_markdown());
+    std::cout << scene_reference_markdown();
     return ExitCode::done;
   }
   const Scene scene = read_scene(options.scene_path);
-  say(scene::build_report(scene, footprint_of(scene.problem), {options.values, machine_memory_bytes()}));
+  std::cout << scene::build_report(scene, footprint_of(scene.problem),
+                                   {options.values, machine_memory_bytes()});
   return ExitCode::done;
 }
 

@@ -1,8 +1,8 @@
 // wanewall run: computes a scene and writes its record.
 #include <fmt/format.h>
-#include <unistd.h>
 
 #include <filesystem>
+#include <iostream>
 #include <memory>
 #include <string>
 #include <system_error>
@@ -72,10 +72,6 @@ void apply_overrides(Scene& scene, const RunOptions& options) {
     scene.problem.schedule = options.schedule == "plain" ? Schedule::plain : Schedule::fused;
     use_instead(scene, "run.schedule", options.schedule);
   }
-}
-
-double machine_memory_bytes() {
-  return static_cast<double>(sysconf(_SC_PHYS_PAGES)) * static_cast<double>(sysconf(_SC_PAGE_SIZE));
 }
 
 // An allocation on Linux succeeds long before the memory is there, and the run would be killed in the night.
@@ -193,7 +189,7 @@ ExitCode run_scene(const RunOptions& options) {
     say(cost_text(result, scene.problem) + "wrote " + record_path + "\n");
     if (options.xdmf) say("wrote " + xdmf_path_of(record_path) + "\n");
   }
-  if (options.tables && code != ExitCode::not_finite) say("\n" + tables_text(record_path));
+  if (options.tables && code != ExitCode::not_finite) std::cout << "\n" << tables_text(record_path);
   return code;
 }
 

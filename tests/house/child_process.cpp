@@ -25,8 +25,10 @@ struct Ends {
   int ours, theirs;
 };
 
-Ends make_output(bool on_terminal) {
-  if (!on_terminal) {
+Ends make_output(const std::string& output) {
+  if (output != on_terminal && output != into_pipe)
+    return {-1, checked(open(output.c_str(), O_WRONLY | O_CLOEXEC), "open of the device")};
+  if (output == into_pipe) {
     int ends[2];
     checked(pipe2(ends, O_CLOEXEC), "pipe");
     return {ends[0], ends[1]};
@@ -42,9 +44,10 @@ Ends make_output(bool on_terminal) {
 
 }  // namespace
 
-Child::Child(const std::vector<std::string>& arguments, const std::string& folder, bool on_terminal)
+Child::Child(const std::vector<std::string>& arguments, const std::string& folder,
+             const std::string& output_to)
     : err_path_(folder + "/standard_error.txt") {
-  const Ends output = make_output(on_terminal);
+  const Ends output = make_output(output_to);
   output_ = output.ours;
   std::vector<std::string> words{WANEWALL_EXECUTABLE};
   words.insert(words.end(), arguments.begin(), arguments.end());

@@ -12,11 +12,15 @@ struct Outcome {
   std::string out, err;
 };
 
+/// Where a child's standard output goes; anything else is the path of a device.
+inline const std::string into_pipe = "pipe", on_terminal = "terminal";
+
 /// A running child. Its standard error goes to a file; its standard output to a pipe or a pseudo terminal.
 class Child {
  public:
-  /// Runs the program with these arguments in `folder`.
-  Child(const std::vector<std::string>& arguments, const std::string& folder, bool on_terminal = false);
+  /// Runs the program with these arguments in `folder`. Output to a device by its path cannot be read back.
+  Child(const std::vector<std::string>& arguments, const std::string& folder,
+        const std::string& output = into_pipe);
   ~Child();
   Child(const Child&) = delete;
   Child& operator=(const Child&) = delete;

@@ -18,7 +18,7 @@ bool has(const std::string& text, const std::string& piece) {
   return text.find(piece) != std::string::npos;
 }
 
-const std::vector<std::string> commands{"check", "run", "tables", "probe"};
+const std::vector<std::string> commands{"check", "run", "tables", "probe", "speed"};
 
 }  // namespace
 
@@ -44,6 +44,18 @@ TEST_CASE("Every command's help has an example") {
     CHECK(has(help.out, "Example"));
     CHECK(has(help.out, "\n  wanewall " + command + " "));
   }
+}
+
+TEST_CASE("Output that is lost is an error") {
+  const ScratchFolder folder;
+  folder.write("small.yaml", small_scene(4.0));
+  const std::vector<std::string> words = GENERATE(std::vector<std::string>{"check", "--schema"},
+                                                  std::vector<std::string>{"check", "--reference"},
+                                                  std::vector<std::string>{"check", "small.yaml"});
+  CAPTURE(words);
+  const Outcome outcome = Child(words, folder.path(), "/dev/full").finish();
+  CHECK(outcome.exit_code == 4);
+  CHECK(has(outcome.err, "standard output"));
 }
 
 TEST_CASE("A wrong command line ends with code 2 and points to the help") {
@@ -164,7 +176,7 @@ TEST_CASE("A run writes its record and says where") {
 TEST_CASE("On a terminal progress is one rewritten line") {
   const ScratchFolder folder;
   folder.write("small.yaml", small_scene(4.0));
-  const Outcome outcome = Child({"run", "small.yaml"}, folder.path(), true).finish();
+  const Outcome outcome = Child({"run", "small.yaml"}, folder.path(), on_terminal).finish();
   REQUIRE(outcome.exit_code == 0);
   CHECK(has(outcome.out, "\r  "));
   CHECK(outcome.out.find('\x1b') == std::string::npos);
