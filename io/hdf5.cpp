@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cerrno>
 #include <cstring>
 #include <filesystem>
 #include <limits>
@@ -36,6 +37,16 @@ Shape chunk_of(const Shape& shape, std::size_t entry_bytes) {
 
 std::vector<hsize_t> extents_of(const Shape& shape) {
   return {shape.begin(), shape.end()};
+}
+
+/// Tells in plain words what HDF5 would tell at length, and spares it files that would make it wait.
+void require_readable_file(const std::string& path) {
+  std::error_code error;
+  const auto status = std::filesystem::status(path, error);
+  if (!std::filesystem::exists(status))
+    throw FileError(fmt::format("{}: cannot read: {}", path, std::strerror(error ? error.value() : ENOENT)));
+  if (!std::filesystem::is_regular_file(status))
+    throw FileError(fmt::format("{}: cannot read: it is not a regular file", path));
 }
 
 herr_t collect_name(hid_t, const char* name, const H5L_info_t*, void* data) {
@@ -198,8 +209,8 @@ Dataset Group::create(const std::string& name, const Shape& shape, const std::ve
     context_->checked(H5Pset_chunk(properties.get(), static_cast<int>(chunk.size()), chunk.data()),
                       "preparing", path);
     context_->checked(H5Pset_shuffle(properties.get()), "preparing", path);
+    // Deflate also puts a checksum on every chunk, which HDF5 compares when it reads.
     context_->checked(H5Pset_deflate(properties.get(), deflate_level), "preparing", path);
-    context_->checked(H5Pset_fletcher32(properties.get()), "preparing", path);
   }
   Handle handle(context_->checked(H5Dcreate2(id(), name.c_str(), file_type.get(), space.get(), H5P_DEFAULT,
                                              properties.get(), H5P_DEFAULT),
@@ -227,10 +238,7 @@ File::File(Handle file, Handle root, std::shared_ptr<Context> context)
 
 File File::open(const std::string& path) {
   auto context = std::make_shared<Context>(path);
-  std::error_code ignored;
-  const auto kind = std::filesystem::status(path, ignored).type();
-  if (kind != std::filesystem::file_type::regular && kind != std::filesystem::file_type::not_found)
-    throw FileError(fmt::format("{}: cannot read: it is not a regular file", path));
+  require_readable_file(path);
   const Handle access(context->checked(H5Pcreate(H5P_FILE_ACCESS), "preparing to read", "it"), H5Pclose);
   // A record is never changed under its name, so there is nothing to lock; some network file systems cannot.
   context->checked(H5Pset_file_locking(access.get(), false, true), "preparing to read", "it");

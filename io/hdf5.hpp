@@ -2,8 +2,9 @@
 // file, what was being done, and HDF5's own reasons. HDF5's printing is switched off.
 //
 // Files are written in the 1.10 layout, whose metadata carry checksums, and every dataset is chunked,
-// shuffled, deflated and checksummed, so that damage is noticed when it is read and not later. HDF5 keeps
-// global state: use this from one thread at a time.
+// shuffled and deflated, which puts a checksum on its data too: damage is noticed when a file is read.
+//
+// HDF5 keeps global state: use this from one thread at a time.
 #pragma once
 
 #include <hdf5.h>

@@ -98,9 +98,9 @@ ProbedPoint probe_snapshots(const Record& record, const ProbeOptions& options) {
     std::string boxes;
     for (const RecordedSnapshot& one : snapshots)
       boxes += fmt::format("\n    {}: {}", one.name, box_text(common_extent(one.fields)));
-    throw CommandLineError(fmt::format("--at \"{}\" lies in no snapshot of {}\n  allowed: {}", options.at,
+    throw CommandLineError(fmt::format("--at \"{}\" lies in no snapshot of {}\n  allowed:{}", options.at,
                                        options.record_path,
-                                       boxes.empty() ? "nothing, the record holds no snapshots" : boxes));
+                                       boxes.empty() ? " nothing, the record holds no snapshots" : boxes));
   }
   ProbedPoint point;
   point.position_m = at_m;

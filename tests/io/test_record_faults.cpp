@@ -4,7 +4,10 @@
 
 #include <algorithm>
 #include <catch2/catch.hpp>
+#include <cerrno>
 #include <csignal>
+#include <cstdint>
+#include <cstring>
 #include <fstream>
 #include <iterator>
 #include <random>
@@ -12,6 +15,7 @@
 
 #include "io/atomic_file.hpp"
 #include "io/errors.hpp"
+#include "io/hdf5_disk.hpp"
 #include "io/record.hpp"
 #include "record_fixture.hpp"
 
@@ -124,6 +128,22 @@ TEST_CASE("A full disk is noticed while the run goes on", "[record][faults]") {
   CHECK_THROWS_AS(writer.take(noise), FileError);
 }
 
+TEST_CASE("What a full disk refuses stays readable until the file is given up", "[record][faults]") {
+  const TemporaryFolder folder;
+  const AtomicFile file(folder / "run.h5");
+  hdf5::Disk disk(file.descriptor());
+  const FileSizeLimit full_disk(10'000);
+  std::vector<unsigned char> wanted(30'000);
+  for (std::size_t n = 0; n < wanted.size(); ++n) wanted[n] = static_cast<unsigned char>(n % 251);
+  for (std::size_t at = 0; at < wanted.size(); at += 1500) disk.write(at, wanted.data() + at, 1500);
+  CHECK(disk.failure() == EFBIG);
+  disk.write(5000, wanted.data(), 700);  // over what the disk had taken
+  std::copy_n(wanted.begin(), 700, wanted.begin() + 5000);
+  std::vector<unsigned char> found(wanted.size());
+  for (std::size_t at = 0; at < found.size(); at += 1000) CHECK(disk.read(at, found.data() + at, 1000));
+  CHECK(found == wanted);
+}
+
 TEST_CASE("A record that cannot be created is a FileError", "[record][faults]") {
   const TemporaryFolder folder;
   const Scene scene = small_scene();
@@ -209,6 +229,36 @@ TEST_CASE("A flipped bit is noticed or does not matter", "[record][faults]") {
       CHECK(found == wanted);
   }
   CHECK(noticed > trials / 2);
+}
+
+TEST_CASE("A flipped bit is noticed in values that cannot be made smaller", "[record][faults]") {
+  const TemporaryFolder folder;
+  const std::string path = folder / "run.h5";
+  std::array<std::vector<double>, 3> points_m;
+  for (auto& points : points_m)
+    for (int i = 0; i < 20; ++i) points.push_back(0.001 * i);
+  Snapshot noise = counted_snapshot("cut", 0, Component::ex, points_m, 1e-12);
+  std::mt19937_64 random(3);
+  for (double& value : std::get<std::vector<double>>(noise.values)) {
+    const std::uint64_t bits = random() & 0xbfefffffffffffffU;  // any finite number
+    std::memcpy(&value, &bits, sizeof value);
+  }
+  {
+    RecordWriter writer(path, small_scene());
+    writer.take(noise);
+    writer.finish(small_result(), small_provenance(), false);
+  }
+  const std::string whole = bytes_of(path), wanted = contents_of(path);
+  CHECK(whole.size() > 20 * 20 * 20 * sizeof(double) * 9 / 10);
+  for (int trial = 0; trial < 50; ++trial) {
+    std::string damaged = whole;
+    const std::size_t at = random() % damaged.size();
+    damaged[at] = static_cast<char>(damaged[at] ^ (1 << (random() % 8)));
+    write_bytes(path, damaged);
+    const std::string found = contents_of(path);
+    CAPTURE(trial, at);
+    CHECK((found.empty() || found == wanted));
+  }
 }
 
 TEST_CASE("An overwritten stretch of a record is noticed or does not matter", "[record][faults]") {

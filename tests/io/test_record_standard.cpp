@@ -329,6 +329,22 @@ TEST_CASE("An audit plane lies in the file as compound of r and i", "[record][st
     CHECK(values[n] == static_cast<float>(-static_cast<int>(n)) / 7.0f);
 }
 
+TEST_CASE("The series of a point have times of their own for E and H", "[record][standard]") {
+  const TemporaryFolder folder;
+  const std::string path = folder / "run.h5";
+  write_small_record(path);
+  const double dt_s = small_lattice().dt_s;
+  const Closing file(H5Fopen(path.c_str(), H5F_ACC_RDONLY, H5P_DEFAULT), H5Fclose);
+  for (const double offset : {0.0, 0.5}) {
+    const char* name = offset == 0.0 ? "/points/above_drum/time_E" : "/points/above_drum/time_H";
+    const Closing dataset(H5Dopen2(file.id, name, H5P_DEFAULT), H5Dclose);
+    REQUIRE(dataset.id >= 0);
+    double times_s[7];
+    REQUIRE(H5Dread(dataset.id, H5T_NATIVE_DOUBLE, H5S_ALL, H5S_ALL, H5P_DEFAULT, times_s) >= 0);
+    for (int n = 0; n < 7; ++n) CHECK(times_s[n] == Approx((n + offset) * dt_s).epsilon(1e-14).margin(1e-30));
+  }
+}
+
 TEST_CASE("Points recomputed from the standard's attributes are the snapshot's own", "[record][standard]") {
   const TemporaryFolder folder;
   const std::string path = folder / "run.h5";
