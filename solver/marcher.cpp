@@ -242,6 +242,7 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
 #pragma omp single
       {
         surface_is_active_ = surface_ && surface_->wave().is_active(s);
+        if (surface_) surface_->begin_step();
         dipoles_.prepare(s);
         for (Recorder* recorder : recorders) recorder->before_step(s);
       }

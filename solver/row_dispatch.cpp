@@ -1,4 +1,5 @@
 #include "solver/row_kernels.hpp"
+#include "solver/table_kernels.hpp"
 
 namespace wanewall {
 
@@ -8,6 +9,9 @@ RowKernels<float> row_kernels_avx512_float();
 RowKernels<double> row_kernels_base_double();
 RowKernels<double> row_kernels_avx2_double();
 RowKernels<double> row_kernels_avx512_double();
+SampleTable sample_table_base();
+SampleTable sample_table_avx2();
+SampleTable sample_table_avx512();
 
 VectorCode best_vector_code() {
   if (__builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512vl") &&
@@ -27,6 +31,11 @@ template <>
 const RowKernels<double>& row_kernels(VectorCode code) {
   static const RowKernels<double> table[3]{row_kernels_base_double(), row_kernels_avx2_double(),
                                            row_kernels_avx512_double()};
+  return table[static_cast<int>(code)];
+}
+
+SampleTable sample_table(VectorCode code) {
+  static const SampleTable table[3]{sample_table_base(), sample_table_avx2(), sample_table_avx512()};
   return table[static_cast<int>(code)];
 }
 

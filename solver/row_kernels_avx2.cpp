@@ -1,6 +1,7 @@
 #define WANEWALL_VECTOR_BYTES 32
 #define WANEWALL_VECTOR_NAMESPACE vector_avx2
 #include "solver/row_kernels.inl"
+#include "solver/table_kernels.inl"
 
 namespace wanewall {
 
@@ -9,6 +10,10 @@ RowKernels<float> row_kernels_avx2_float() {
 }
 RowKernels<double> row_kernels_avx2_double() {
   return vector_avx2::make_kernels<double>("AVX2");
+}
+
+SampleTable sample_table_avx2() {
+  return vector_avx2::sample_table;
 }
 
 }  // namespace wanewall

@@ -1,6 +1,7 @@
 #define WANEWALL_VECTOR_BYTES 64
 #define WANEWALL_VECTOR_NAMESPACE vector_avx512
 #include "solver/row_kernels.inl"
+#include "solver/table_kernels.inl"
 
 namespace wanewall {
 
@@ -9,6 +10,10 @@ RowKernels<float> row_kernels_avx512_float() {
 }
 RowKernels<double> row_kernels_avx512_double() {
   return vector_avx512::make_kernels<double>("AVX-512");
+}
+
+SampleTable sample_table_avx512() {
+  return vector_avx512::sample_table;
 }
 
 }  // namespace wanewall

@@ -1,6 +1,7 @@
 #define WANEWALL_VECTOR_BYTES 16
 #define WANEWALL_VECTOR_NAMESPACE vector_base
 #include "solver/row_kernels.inl"
+#include "solver/table_kernels.inl"
 
 namespace wanewall {
 
@@ -9,6 +10,10 @@ RowKernels<float> row_kernels_base_float() {
 }
 RowKernels<double> row_kernels_base_double() {
   return vector_base::make_kernels<double>("baseline");
+}
+
+SampleTable sample_table_base() {
+  return vector_base::sample_table;
 }
 
 }  // namespace wanewall

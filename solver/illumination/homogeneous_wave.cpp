@@ -7,30 +7,17 @@
 
 #include "geometry/constants.hpp"
 #include "solver/illumination/incident_wave.hpp"
+#include "solver/table_kernels.hpp"
 
 namespace wanewall {
 namespace {
 
 using Complex = std::complex<double>;
 
-constexpr int taps = 8;
+constexpr int taps = table_taps;
 constexpr double spectrum_floor = 1e-12;  // relative; bins below it are left out
+constexpr double quiet_level = 1e-13;     // of the peak; where all is below, nothing is added
 constexpr double slack_cells = 60.0;      // the lattice's slowest waves trail behind
-
-/// Weights of the 8 table points around a position `fraction` of the way between the 4th and the 5th.
-std::array<double, taps> lagrange_weights(double fraction) {
-  // Product over the other points of (x - x_j)/(x_i - x_j) with x_j = -3..4; denominators are the same every
-  // time.
-  static constexpr std::array<double, taps> inverse_denominator{
-      -1.0 / 5040, 1.0 / 720, -1.0 / 240, 1.0 / 144, -1.0 / 144, 1.0 / 240, -1.0 / 720, 1.0 / 5040};
-  std::array<double, taps> x, below, above, weights;
-  for (int i = 0; i < taps; ++i) x[static_cast<std::size_t>(i)] = fraction - (i - 3);
-  below[0] = above[taps - 1] = 1.0;
-  for (std::size_t i = 1; i < taps; ++i) below[i] = below[i - 1] * x[i - 1];
-  for (std::size_t i = taps - 1; i > 0; --i) above[i - 1] = above[i] * x[i];
-  for (std::size_t i = 0; i < taps; ++i) weights[i] = below[i] * above[i] * inverse_denominator[i];
-  return weights;
-}
 
 class HomogeneousWave : public IncidentWave {
  public:
@@ -39,20 +26,28 @@ class HomogeneousWave : public IncidentWave {
   bool is_active(long step) const override { return time_of_e_s(step, dt_s_) < end_s_; }
   int n_parts() const override { return 6; }
   void prepare(long step, int part) override;
-  void row(Component c, int i, int j, int k, int count, double* out) const override;
+  void row(Component c, int i, int j, int k, int count, double* out) const override {
+    line(c, {i, j, k}, Axis::z, count, out);
+  }
+  void line_y(Component c, int i, int j, int k, int count, double* out) const override {
+    line(c, {i, j, k}, Axis::y, count, out);
+  }
 
  private:
   struct Part {
     std::vector<Complex> amplitude;  // per wavenumber, for the component
     std::vector<double> table;       // value at origin + m step, with room for the taps at both ends
+    double quiet_below = 0.0;        // positions in the table outside which nothing is left of the pulse
+    double quiet_above = 0.0;
     Eigen::FFT<double> fft;
     std::vector<Complex> half_spectrum;
     std::vector<double> samples;
   };
 
-  double along_m(Component c, int i, int j, int k) const {
+  void line(Component c, Index3 at, Axis along, int count, double* out) const;
+  double along_m(Component c, Index3 at) const {
     double p = 0.0;
-    const Vec3 r = lattice_.position_m(c, Index3{i, j, k});
+    const Vec3 r = lattice_.position_m(c, at);
     for (std::size_t a = 0; a < 3; ++a) p += direction_[a] * (r[a] - origin_m_[a]);
     return p;
   }
@@ -62,9 +57,9 @@ class HomogeneousWave : public IncidentWave {
   Vec3 direction_{}, origin_m_{};
   double table_origin_m_ = 0.0, table_step_m_ = 0.0;
   std::size_t table_size_ = 0, period_ = 0;
-  int stride_z_ = 0;  // table steps from k to k + 1, signed; valid when whole_stride_
-  bool whole_stride_ = false;
+  SampleTable sample_ = sample_table(best_vector_code());
   double end_s_ = 0.0;
+  double heard_above_ = 0.0;  // smaller fields are left out
   std::vector<double> omega_;
   std::vector<double> wavenumber_;
   std::array<Part, 6> parts_;
@@ -94,14 +89,6 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
   end_s_ = (path_m + pulse_m + 0.5 * slack_cells * largest) / speed;
 
   table_step_m_ = 0.25 * smallest;
-  const double dz = std::abs(direction_[2]) * cell[2];
-  if (dz > 0.25 * table_step_m_) {
-    // A whole number of table steps per cell along z: one set of weights then serves a whole row.
-    const double steps = std::ceil(dz / table_step_m_ - 1e-9);
-    table_step_m_ = dz / steps;
-    stride_z_ = static_cast<int>(steps) * (direction_[2] > 0.0 ? 1 : -1);
-    whole_stride_ = true;
-  }
   period_ = 64;
   while (static_cast<double>(period_) * table_step_m_ < needed_m) period_ *= 2;
   const double period_m = static_cast<double>(period_) * table_step_m_;
@@ -109,6 +96,7 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
   table_size_ = static_cast<std::size_t>(std::ceil((path_m + 4.0 * largest) / table_step_m_)) + 3 * taps;
   table_size_ = std::min(table_size_, period_);
 
+  heard_above_ = quiet_level * wave.peak_v_per_m;
   const Vec3 e_hat = e_direction_of(wave);
   const double peak = spectrum_peak_s(wave.pulse);
   double last_level = 1.0;
@@ -187,36 +175,23 @@ void HomogeneousWave::prepare(long step, int part_number) {
   }
   part.fft.inv(part.samples.data(), part.half_spectrum.data(), static_cast<Eigen::Index>(period_));
   std::copy_n(part.samples.begin(), table_size_, part.table.begin());
+  const auto heard = [&](double v) { return std::abs(v) > heard_above_; };
+  const auto first = std::find_if(part.table.begin(), part.table.end(), heard);
+  const auto last = std::find_if(part.table.rbegin(), part.table.rend(), heard);
+  part.quiet_below = static_cast<double>(first - part.table.begin()) - taps;
+  part.quiet_above = static_cast<double>(part.table.rend() - last) + taps;
 }
 
-void HomogeneousWave::row(Component c, int i, int j, int k, int count, double* out) const {
-  const double* table = parts_[static_cast<std::size_t>(index_of(c))].table.data();
-  const double first = (along_m(c, i, j, k) - table_origin_m_) / table_step_m_;
-  const auto sample = [&](double position) {
-    const double whole = std::floor(position);
-    const std::array<double, taps> w = lagrange_weights(position - whole);
-    const double* at = table + static_cast<std::ptrdiff_t>(whole) - 3;
-    double sum = 0.0;
-    for (std::size_t n = 0; n < taps; ++n) sum += w[n] * at[n];
-    return sum;
-  };
-  if (count == 1) {
-    out[0] = sample(first);
-  } else if (direction_[2] == 0.0) {
-    std::fill_n(out, count, sample(first));
-  } else if (whole_stride_) {
-    const double whole = std::floor(first);
-    const std::array<double, taps> w = lagrange_weights(first - whole);
-    const double* at = table + static_cast<std::ptrdiff_t>(whole) - 3;
-    for (int n = 0; n < count; ++n, at += stride_z_) {
-      double sum = 0.0;
-      for (std::size_t m = 0; m < taps; ++m) sum += w[m] * at[m];
-      out[n] = sum;
-    }
-  } else {
-    const double step = direction_[2] * lattice_.along(Axis::z).cell_m(0) / table_step_m_;
-    for (int n = 0; n < count; ++n) out[n] = sample(first + n * step);
-  }
+void HomogeneousWave::line(Component c, Index3 at, Axis along, int count, double* out) const {
+  const Part& part = parts_[static_cast<std::size_t>(index_of(c))];
+  const double first = (along_m(c, at) - table_origin_m_) / table_step_m_;
+  const auto a = static_cast<std::size_t>(index_of(along));
+  const double step = direction_[a] * lattice_.along(along).cell_m(0) / table_step_m_;
+  const double last = first + (count - 1) * step;
+  if (std::max(first, last) < part.quiet_below || std::min(first, last) > part.quiet_above)
+    std::fill_n(out, count, 0.0);
+  else
+    sample_(part.table.data(), first, step, count, out);
 }
 
 }  // namespace

@@ -20,6 +20,8 @@ class IncidentWave {
   virtual void prepare(long step, int part) = 0;
   /// `count` values of a component from (i, j, k) on along z. The wave must be active and prepared.
   virtual void row(Component c, int i, int j, int k, int count, double* out) const = 0;
+  /// `count` values of a component from (i, j, k) on along y.
+  virtual void line_y(Component c, int i, int j, int k, int count, double* out) const = 0;
 };
 
 /// Medium that carries the wave: lossless.

@@ -70,6 +70,10 @@ class LayeredWave : public IncidentWave {
   int n_parts() const override { return 2; }
   void prepare(long step, int part) override;
   void row(Component c, int i, int j, int k, int count, double* out) const override;
+  void line_y(Component c, int i, int j, int k, int count, double* out) const override {
+    row(c, i, j, k, 1, out);  // the same everywhere in a plane
+    std::fill_n(out, count, out[0]);
+  }
 
  private:
   double dt_s_, end_s_;

@@ -1,6 +1,7 @@
 #include "solver/illumination/total_field_surface.hpp"
 
 #include <algorithm>
+#include <atomic>
 #include <cmath>
 
 #include "geometry/constants.hpp"
@@ -181,7 +182,10 @@ void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electri
         Index3 from{i, j, k.begin};
         from[at(normal)] = electric ? (high ? node : node - 1) : node;
         incident.resize(static_cast<std::size_t>(k.size()));
-        wave_->row(source, from[0], from[1], from[2], k.size(), incident.data());
+        if (normal == Axis::z)
+          incident[0] = on_z_face(source, high, i, j, from[2], electric);
+        else
+          wave_->row(source, from[0], from[1], from[2], k.size(), incident.data());
         const std::vector<double>& gain = (electric ? e_gain_ : h_gain_)[at(u)];
         Real* out = own[index_of(u)];
         for (int n = k.begin; n < k.end; ++n)
@@ -190,6 +194,37 @@ void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electri
       }
     }
   }
+}
+
+template <class Real>
+void TotalFieldSurface<Real>::begin_step() {
+  // Counted over all surfaces of the process: one that was built where another had been must not meet its
+  // lines.
+  static std::atomic<long> steps_of_all{0};
+  generation_ = ++steps_of_all;
+}
+
+template <class Real>
+double TotalFieldSurface<Real>::on_z_face(Component source, bool high, int i, int j, int k,
+                                          bool electric) const {
+  struct Line {
+    const void* owner = nullptr;
+    long generation = -1;
+    int i = -1;
+    std::vector<double> values;
+  };
+  // [rows of E or H][face][source along x or y]
+  thread_local std::array<std::array<std::array<Line, 2>, 2>, 2> lines;
+  Line& line = lines[electric ? 0 : 1][high ? 1 : 0][axis_of(source) == Axis::x ? 0 : 1];
+  const IndexRange y = extent(source, Axis::y);
+  if (line.owner != this || line.generation != generation_ || line.i != i) {
+    line.owner = this;
+    line.generation = generation_;
+    line.i = i;
+    line.values.resize(static_cast<std::size_t>(y.size()));
+    wave_->line_y(source, i, y.begin, k, y.size(), line.values.data());
+  }
+  return line.values[static_cast<std::size_t>(j - y.begin)];
 }
 
 template class TotalFieldSurface<float>;

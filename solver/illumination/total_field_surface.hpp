@@ -19,6 +19,9 @@ class TotalFieldSurface {
   TotalFieldSurface(const Problem& problem, const MediaRows<Real>& e_media, const MediaRows<Real>& h_media);
 
   IncidentWave& wave() { return *wave_; }
+  /// Must be told, by one thread, before the rows of a step: values kept from the last step are then out of
+  /// date.
+  void begin_step();
   const WaveMedium& medium() const { return medium_; }
 
   /// True when row (i, j) has terms to add to E (or H) at all.
@@ -34,8 +37,13 @@ class TotalFieldSurface {
   /// Index range of the surface's components along an axis.
   IndexRange extent(Component c, Axis a) const;
 
+  /// Incident value at row (i, j) on a z face. Rows of one plane i come one after another, so the whole line
+  /// along y is sampled once per thread and kept.
+  double on_z_face(Component source, bool high, int i, int j, int k, bool electric) const;
+
   Lattice lattice_;
   PlaneWave plane_wave_;
+  long generation_ = 0;
   WaveMedium medium_;
   std::unique_ptr<IncidentWave> wave_;
   std::array<std::vector<double>, 3> e_gain_, h_gain_;  // [component][k]
