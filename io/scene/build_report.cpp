@@ -11,6 +11,7 @@
 #include "io/scene/source.hpp"
 #include "io/scene/text_table.hpp"
 #include "io/terminal.hpp"
+#include "solver/interpolation.hpp"
 
 namespace wanewall::scene {
 namespace {
@@ -299,13 +300,12 @@ double snapshot_values(const Problem& problem) {
       for (Axis a : all_axes) {
         if (request.normal == a) continue;
         const auto i = static_cast<std::size_t>(index_of(a));
-        const IndexRange clear = lattice.clear(c, a);
-        int inside = 0;
-        for (int k = clear.begin; k < clear.end; ++k) {
-          const double at_m = lattice.position_m(c, a, k);
-          if (request.lo_m[i] <= at_m && at_m <= request.hi_m[i]) ++inside;
-        }
-        positions *= std::ceil(static_cast<double>(std::max(1, inside)) / request.stride);
+        // As the recorder does: out to the next index beyond each end.
+        const LinearPair lo = linear_pair(lattice, c, a, request.lo_m[i]);
+        const LinearPair hi = linear_pair(lattice, c, a, request.hi_m[i]);
+        const int first = lo.upper_weight == 1.0 ? lo.upper : lo.lower;
+        const int last = hi.upper_weight == 0.0 ? hi.lower : hi.upper;
+        positions *= std::ceil(static_cast<double>(last - first + 1) / request.stride);
       }
       total += times * positions;
     }
