@@ -19,15 +19,15 @@ inline void sample_table(const double* __restrict table, double first, double st
                  below5 = below4 * x4, below6 = below5 * x5, below7 = below6 * x6;
     const double above6 = x7, above5 = x7 * x6, above4 = above5 * x5, above3 = above4 * x4,
                  above2 = above3 * f, above1 = above2 * x2, above0 = above1 * x1;
-    const double* at = table + whole - 3;
-    double sum = above0 * (-1.0 / 5040.0) * at[0];
-    sum += below1 * above1 * (1.0 / 720.0) * at[1];
-    sum += below2 * above2 * (-1.0 / 240.0) * at[2];
-    sum += below3 * above3 * (1.0 / 144.0) * at[3];
-    sum += below4 * above4 * (-1.0 / 144.0) * at[4];
-    sum += below5 * above5 * (1.0 / 240.0) * at[5];
-    sum += below6 * above6 * (-1.0 / 720.0) * at[6];
-    sum += below7 * (1.0 / 5040.0) * at[7];
+    const int at = whole - 3;
+    double sum = above0 * (-1.0 / 5040.0) * table[at + 0];
+    sum += below1 * above1 * (1.0 / 720.0) * table[at + 1];
+    sum += below2 * above2 * (-1.0 / 240.0) * table[at + 2];
+    sum += below3 * above3 * (1.0 / 144.0) * table[at + 3];
+    sum += below4 * above4 * (-1.0 / 144.0) * table[at + 4];
+    sum += below5 * above5 * (1.0 / 240.0) * table[at + 5];
+    sum += below6 * above6 * (-1.0 / 720.0) * table[at + 6];
+    sum += below7 * (1.0 / 5040.0) * table[at + 7];
     out[m] = sum;
   }
 }

@@ -63,6 +63,11 @@ TotalFieldSurface<Real>::TotalFieldSurface(const Problem& problem, const MediaRo
     column.h.push_back(h_column.at(0, k));
   }
 
+  for (const bool electric : {true, false}) {
+    for (const Term& term : make_terms(electric))
+      (term.normal == Axis::z ? z_terms_ : side_terms_)[electric ? 0 : 1].push_back(term);
+  }
+
   // Every row that the surface touches must be like that column.
   for (const bool electric : {true, false}) {
     const MediaRows<Real>& media = electric ? e_media : h_media;
@@ -151,48 +156,64 @@ bool TotalFieldSurface<Real>::touches(int i, int j, bool electric) const {
   return (w.box_face[4] || w.box_face[5]) && within(i, 0) && within(j, 1);
 }
 
+/// E: curl_u holds -d H_v/d n and curl_v holds +d H_u/d n; Faraday's law has the other sign. A total-field
+/// target lacks the incident part of its scattered neighbour, a scattered-field target has one too many of
+/// its total neighbour.
+template <class Real>
+std::vector<typename TotalFieldSurface<Real>::Term> TotalFieldSurface<Real>::make_terms(bool electric) const {
+  std::vector<Term> terms;
+  for (Side side : all_sides) {
+    if (!plane_wave_.box_face[static_cast<std::size_t>(index_of(side))]) continue;
+    const Axis normal = axis_of(side);
+    const bool high = is_high(side);
+    const int node = high ? plane_wave_.box_hi[at(normal)] : plane_wave_.box_lo[at(normal)];
+    for (const bool first : {true, false}) {
+      const Axis u = first ? next(normal) : previous(normal);
+      const Axis v = first ? previous(normal) : next(normal);
+      Term term;
+      term.normal = normal;
+      term.high = high;
+      term.corrected = electric ? wanewall::electric(u) : magnetic(u);
+      term.source = electric ? magnetic(v) : wanewall::electric(v);
+      // H is corrected half a cell outside the face, E on it; the source lies on the other side of the face.
+      term.target = electric || high ? node : node - 1;
+      term.source_index = electric && !high ? node - 1 : node;
+      const MeshLines& lines = lattice_.along(normal);
+      const double inv_d = 1.0 / (electric ? lines.dual_m(node) : lines.cell_m(term.target));
+      term.factor_per_m = inv_d * (first == high ? -1.0 : 1.0) * (electric ? 1.0 : -1.0);
+      const IndexRange here{term.target, term.target + 1};
+      term.x = normal == Axis::x ? here : extent(term.corrected, Axis::x);
+      term.y = normal == Axis::y ? here : extent(term.corrected, Axis::y);
+      term.z = normal == Axis::z ? here : extent(term.corrected, Axis::z);
+      terms.push_back(term);
+    }
+  }
+  return terms;
+}
+
 template <class Real>
 void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electric) const {
   thread_local std::vector<double> incident;
-  const int back = electric ? 0 : 1;
-  const Index3 row{i, j, 0};
-  for (Axis normal : all_axes) {
-    for (const bool high : {false, true}) {
-      const Side side = side_of(normal, high);
-      if (!plane_wave_.box_face[static_cast<std::size_t>(index_of(side))]) continue;
-      const int node = high ? plane_wave_.box_hi[at(normal)] : plane_wave_.box_lo[at(normal)];
-      const int target = high ? node : node - back;  // index of the component that is corrected
-      if (normal != Axis::z && row[at(normal)] != target) continue;
-      const MeshLines& lines = lattice_.along(normal);
-      const double inv_d = 1.0 / (electric ? lines.dual_m(node) : lines.cell_m(target));
-      // E half: curl_u holds -d H_v / d n, curl_v holds +d H_u / d n. H half: the same with E, and a sign
-      // from Faraday's law; total-field targets lack the incident part of their scattered neighbour,
-      // scattered-field targets have one too many of their total neighbour.
-      for (const bool first : {true, false}) {
-        const Axis u = first ? next(normal) : previous(normal);
-        const Axis v = first ? previous(normal) : next(normal);
-        const Component corrected = electric ? wanewall::electric(u) : magnetic(u);
-        const Component source = electric ? magnetic(v) : wanewall::electric(v);
-        const double sign = ((first == high) ? -1.0 : 1.0) * (electric ? 1.0 : -1.0);
-        if (normal != Axis::x && !extent(corrected, Axis::x).contains(i)) continue;
-        if (normal != Axis::y && !extent(corrected, Axis::y).contains(j)) continue;
-        IndexRange k = normal == Axis::z ? IndexRange{target, target + 1} : extent(corrected, Axis::z);
-        // The source sits half a cell beyond an E target (low side: index below), on the node beside an H
-        // target.
-        Index3 from{i, j, k.begin};
-        from[at(normal)] = electric ? (high ? node : node - 1) : node;
-        incident.resize(static_cast<std::size_t>(k.size()));
-        if (normal == Axis::z)
-          incident[0] = on_z_face(source, high, i, j, from[2], electric);
-        else
-          wave_->row(source, from[0], from[1], from[2], k.size(), incident.data());
-        const std::vector<double>& gain = (electric ? e_gain_ : h_gain_)[at(u)];
-        Real* out = own[index_of(u)];
-        for (int n = k.begin; n < k.end; ++n)
-          out[n] += static_cast<Real>(sign * gain[static_cast<std::size_t>(n)] * inv_d *
-                                      incident[static_cast<std::size_t>(n - k.begin)]);
-      }
-    }
+  const std::size_t field = electric ? 0 : 1;
+  const auto& all_gains = electric ? e_gain_ : h_gain_;
+  for (const Term& term : side_terms_[field]) {
+    if (!term.x.contains(i) || !term.y.contains(j)) continue;
+    Index3 from{i, j, term.z.begin};
+    from[at(term.normal)] = term.source_index;
+    incident.resize(static_cast<std::size_t>(term.z.size()));
+    wave_->row(term.source, from[0], from[1], from[2], term.z.size(), incident.data());
+    const int component = index_of(axis_of(term.corrected));
+    const double* gain = all_gains[static_cast<std::size_t>(component)].data() + term.z.begin;
+    Real* out = own[component] + term.z.begin;
+    for (int n = 0; n < term.z.size(); ++n)
+      out[n] += static_cast<Real>(term.factor_per_m * gain[n] * incident[static_cast<std::size_t>(n)]);
+  }
+  for (const Term& term : z_terms_[field]) {
+    if (!term.x.contains(i) || !term.y.contains(j)) continue;
+    const int component = index_of(axis_of(term.corrected));
+    const double gain = all_gains[static_cast<std::size_t>(component)][static_cast<std::size_t>(term.target)];
+    const double value = z_face_line(term, i, electric)[j - term.y.begin];
+    own[component][term.target] += static_cast<Real>(term.factor_per_m * gain * value);
   }
 }
 
@@ -205,8 +226,7 @@ void TotalFieldSurface<Real>::begin_step() {
 }
 
 template <class Real>
-double TotalFieldSurface<Real>::on_z_face(Component source, bool high, int i, int j, int k,
-                                          bool electric) const {
+const double* TotalFieldSurface<Real>::z_face_line(const Term& term, int i, bool electric) const {
   struct Line {
     const void* owner = nullptr;
     long generation = -1;
@@ -215,16 +235,15 @@ double TotalFieldSurface<Real>::on_z_face(Component source, bool high, int i, in
   };
   // [rows of E or H][face][source along x or y]
   thread_local std::array<std::array<std::array<Line, 2>, 2>, 2> lines;
-  Line& line = lines[electric ? 0 : 1][high ? 1 : 0][axis_of(source) == Axis::x ? 0 : 1];
-  const IndexRange y = extent(source, Axis::y);
+  Line& line = lines[electric ? 0 : 1][term.high ? 1 : 0][axis_of(term.source) == Axis::x ? 0 : 1];
   if (line.owner != this || line.generation != generation_ || line.i != i) {
     line.owner = this;
     line.generation = generation_;
     line.i = i;
-    line.values.resize(static_cast<std::size_t>(y.size()));
-    wave_->line_y(source, i, y.begin, k, y.size(), line.values.data());
+    line.values.resize(static_cast<std::size_t>(term.y.size()));
+    wave_->line_y(term.source, i, term.y.begin, term.source_index, term.y.size(), line.values.data());
   }
-  return line.values[static_cast<std::size_t>(j - y.begin)];
+  return line.values.data();
 }
 
 template class TotalFieldSurface<float>;

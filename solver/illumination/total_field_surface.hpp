@@ -32,14 +32,24 @@ class TotalFieldSurface {
   void add_h(int i, int j, Real* const own[3]) const { add(i, j, own, false); }
 
  private:
+  /// One face's correction of one tangential component: field += factor gain(k) incident(source).
+  struct Term {
+    Axis normal = Axis::x;
+    bool high = false;
+    Component corrected = Component::ex, source = Component::hx;
+    int target = 0;        ///< index of the corrected component along the normal
+    int source_index = 0;  ///< index of the incident component along the normal
+    double factor_per_m = 0.0;
+    IndexRange x, y, z;  ///< where the corrected component exists on the face; one index along the normal
+  };
+  std::vector<Term> make_terms(bool electric) const;
   bool touches(int i, int j, bool electric) const;
   void add(int i, int j, Real* const own[3], bool electric) const;
   /// Index range of the surface's components along an axis.
   IndexRange extent(Component c, Axis a) const;
-
-  /// Incident value at row (i, j) on a z face. Rows of one plane i come one after another, so the whole line
-  /// along y is sampled once per thread and kept.
-  double on_z_face(Component source, bool high, int i, int j, int k, bool electric) const;
+  /// Incident values on a z face along y at plane i. Rows of one plane come one after another, so the line is
+  /// sampled once per thread and kept.
+  const double* z_face_line(const Term& term, int i, bool electric) const;
 
   Lattice lattice_;
   PlaneWave plane_wave_;
@@ -47,6 +57,8 @@ class TotalFieldSurface {
   WaveMedium medium_;
   std::unique_ptr<IncidentWave> wave_;
   std::array<std::vector<double>, 3> e_gain_, h_gain_;  // [component][k]
+  // Terms of faces across x and y, which whole rows belong to, and of faces across z, which cross every row.
+  std::array<std::vector<Term>, 2> side_terms_, z_terms_;  // [E, H]
 };
 
 }  // namespace wanewall
