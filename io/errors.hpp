@@ -18,7 +18,8 @@ enum class ExitCode {
   goal_missed = 7     ///< a goal was missed, where the user asked for a verdict
 };
 
-/// The scene is wrong. what() is complete: "file:line:column: key = value is not allowed / allowed: ... / next step".
+/// The scene is wrong. what() is complete: "file:line:column: key = value is not allowed / allowed: ... /
+/// next step".
 struct SceneError : std::runtime_error {
   using std::runtime_error::runtime_error;
 };

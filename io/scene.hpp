@@ -26,11 +26,12 @@ struct Scene {
   std::vector<std::string> warnings;
 };
 
-/// Reads and checks a scene file. Throws SceneError when the scene is wrong and FileError when the file (or a CSV file
-/// it names, relative to the scene's folder) cannot be read.
+/// Reads and checks a scene file. Throws SceneError when the scene is wrong and FileError when the file (or a
+/// CSV file it names, relative to the scene's folder) cannot be read.
 Scene read_scene(const std::string& path);
 
-/// The same for a text in memory; `name` stands for the file in messages, `folder` is where relative files are.
+/// The same for a text in memory; `name` stands for the file in messages, `folder` is where relative files
+/// are.
 Scene parse_scene(const std::string& text, const std::string& name, const std::string& folder);
 
 /// JSON Schema of the scene language and its reference page in Markdown, from the declared keys.
