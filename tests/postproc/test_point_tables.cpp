@@ -28,9 +28,8 @@ TEST_CASE("The peak keeps its sign and its own time", "[point_tables]") {
   CHECK(h.value == -3.0);
   CHECK(h.time_s == Approx(2.5 * dt_s));  // H lives half a step later
   CHECK(peak_of(series_of({}), Component::ex, dt_s).value == 0.0);
-  CHECK(
-      peak_of(series_of({1.0, std::numeric_limits<double>::quiet_NaN(), -2.0}), Component::ex, dt_s).value ==
-      -2.0);
+  CHECK(peak_of(series_of({1.0, std::numeric_limits<double>::infinity(), -2.0}), Component::ex, dt_s).value ==
+        -2.0);
 }
 
 TEST_CASE("The spectrum of a decaying exponential is a geometric series", "[point_tables]") {

@@ -26,7 +26,7 @@ AuditRecord record_of(const TestFace& face, const WaveSum& waves) {
 TestFace tile(int cells) {
   TestFace face;
   face.periodic = {true, true};
-  face.clear_cells = {cells, cells};
+  face.clear_cells = {cells, cells + 1};
   return face;
 }
 
@@ -86,6 +86,7 @@ TEST_CASE("Bins, shares and flags of a tapered face", "[reflection_table]") {
   TestFace face;
   face.clear_cells = {90, 75};
   face.side = Side::y_lo;
+  face.shell_cells = 12;
   const double theta = 33.0 * pi / 180.0;
   const AuditReport report =
       audit_report(record_of(face, one_wave(face, theta, 0.4, 1.0, 0.0)), face.lattice(), {});
@@ -99,12 +100,13 @@ TEST_CASE("Bins, shares and flags of a tapered face", "[reflection_table]") {
     CHECK(te.share_db <= reading.rows[3].readings[0].share_db);
     CHECK(te.not_illuminated == (te.share_db < -20.0));
     if (bin > 6) CHECK(te.not_illuminated);
-    // From plane 0 to the wall: 2 cells and a shell of 3; L/2 = 45 cells of 10 mm and 37.5 cells of 12 mm.
+    // From plane 0 to the wall: 2 cells and a shell of 12; L/2 = 45 cells of 10 mm and 37.5 cells of 12 mm.
     const double back_m =
-        2.0 * 5.0 * face.spacing_m[2] * std::tan((10.0 * static_cast<double>(bin) + 5.0) * pi / 180.0);
+        2.0 * 14.0 * face.spacing_m[2] * std::tan((10.0 * static_cast<double>(bin) + 5.0) * pi / 180.0);
     CHECK(reading.rows[bin].walk_off == (back_m > 0.45));
   }
-  CHECK(reading.rows[8].walk_off);
+  CHECK_FALSE(reading.rows[5].walk_off);
+  CHECK(reading.rows[6].walk_off);
   CHECK(reading.near_normal.share_db < 0.0);
   double sum = 0.0;
   for (const AngleRow& row : reading.rows)
@@ -202,6 +204,9 @@ TEST_CASE("Records that do not fit together are refused, not read", "[reflection
   SECTION("a missing plane") {
     audit.faces[0].planes.erase(audit.faces[0].planes.begin());
   }
+  SECTION("a plane of another shape") {
+    std::swap(audit.faces[0].planes[0].shape[0], audit.faces[0].planes[0].shape[1]);
+  }
   SECTION("no planes at all") {
     audit.faces[0].planes.clear();
   }
@@ -237,4 +242,22 @@ TEST_CASE("Every row of the tables has a cell for every column", "[reflection_ta
   }
   CHECK(reflection_rows(report).rows.size() == 18);
   CHECK(has_angles(report.faces[0]));
+}
+
+TEST_CASE("Tables leave out empty bins and say where nothing was lit", "[reflection_table]") {
+  const TestFace small = tile(6);
+  const AuditReport one_mode =
+      audit_report(record_of(small, one_wave(small, 0.0, 0.0, 1.0, 1.0)), small.lattice(), {});
+  CHECK(angle_table(one_mode.faces[0].readings[0]).rows.size() == 1);
+  CHECK(reflection_rows(one_mode).rows.size() == 2);
+  CHECK_FALSE(has_angles(one_mode.faces[0]));
+
+  TestFace face;
+  face.clear_cells = {90, 75};
+  const AuditReport oblique =
+      audit_report(record_of(face, one_wave(face, 65.0 * pi / 180.0, 0.4, 1.0, 1.0)), face.lattice(), {});
+  CHECK(oblique.faces[0].readings[0].near_normal.not_illuminated);
+  CHECK_THAT(to_markdown(power_table(oblique.faces[0])), Catch::Contains("not illuminated"));
+  CHECK(worst_reading(oblique.faces[0], AngleRange::near_normal) == nullptr);
+  CHECK(worst_reading(oblique.faces[0], AngleRange::all) != nullptr);
 }
