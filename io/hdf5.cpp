@@ -1,6 +1,9 @@
 #include "io/hdf5.hpp"
 
 #include <fmt/format.h>
+#ifdef __GLIBC__
+#include <malloc.h>
+#endif
 
 #include <algorithm>
 #include <cerrno>
@@ -47,6 +50,17 @@ void require_readable_file(const std::string& path) {
     throw FileError(fmt::format("{}: cannot read: {}", path, std::strerror(error ? error.value() : ENOENT)));
   if (!std::filesystem::is_regular_file(status))
     throw FileError(fmt::format("{}: cannot read: it is not a regular file", path));
+}
+
+/// zlib takes a quarter of a megabyte for every chunk and gives it back; glibc would return it to the system
+/// each time, which made small snapshots seven times slower to write.
+void keep_freed_memory() {
+#ifdef __GLIBC__
+  constexpr int mebibyte = 1 << 20;
+  mallopt(M_TRIM_THRESHOLD, 64 * mebibyte);
+  mallopt(M_TOP_PAD, 4 * mebibyte);
+  mallopt(M_MMAP_THRESHOLD, 32 * mebibyte);  // where glibc's own rule would end up
+#endif
 }
 
 herr_t collect_name(hid_t, const char* name, const H5L_info_t*, void* data) {
@@ -250,6 +264,7 @@ File File::open(const std::string& path) {
 }
 
 File File::create(AtomicFile& target) {
+  keep_freed_memory();
   auto context = std::make_shared<Context>(target.final_path());
   context->disk = std::make_unique<Disk>(target.descriptor());
   const Handle access(context->checked(H5Pcreate(H5P_FILE_ACCESS), "preparing to write", "it"), H5Pclose);

@@ -133,7 +133,7 @@ ProbedPoint probe_point(const Record& record, const ProbeOptions& options) {
 std::vector<double> frequencies_in(const ProbeOptions& options, const ProbedPoint& point) {
   std::string text;
   for (const std::string& part : options.frequencies) text += part + " ";
-  const std::vector<double> frequencies_hz = quantities_in(text, Family::frequency, "--frequencies");
+  std::vector<double> frequencies_hz = quantities_in(text, Family::frequency, "--frequencies");
   const double limit_hz = nyquist_limit_hz(point.series);
   for (const double frequency_hz : frequencies_hz)
     if (!(frequency_hz >= 0.0 && frequency_hz < limit_hz))
