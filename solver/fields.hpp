@@ -37,6 +37,8 @@ class Fields {
   const Real* row(Component c, int i, int j) const {
     return first_[static_cast<std::size_t>(index_of(c))] + layout_.at(i, j);
   }
+  /// Row (0, 0); row (i, j) is layout().at(i, j) further on.
+  Real* first(Component c) { return first_[static_cast<std::size_t>(index_of(c))]; }
   const RowLayout& layout() const { return layout_; }
   static std::size_t bytes(const RowLayout& layout);
 

@@ -45,7 +45,8 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
       z_cells_lo_(cfs_cells(problem, Side::z_lo)),
       z_cells_hi_(cfs_cells(problem, Side::z_hi)),
       dipoles_(problem, e_media_, h_media_),
-      rows_{n_rows(problem.lattice, Axis::x), n_rows(problem.lattice, Axis::y)},
+      rows_{n_rows(problem.lattice, Axis::x), n_rows(problem.lattice, Axis::y),
+            rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
       slabs_(deal_planes(rows_.n_i, threads)) {
   e_memory_ = std::make_unique<LayerMemory<Real>>(layout_, e_stretch_[0].n_slots, e_stretch_[1].n_slots,
                                                   z_cells_lo_ + z_cells_hi_);
@@ -84,33 +85,29 @@ const Real* Marcher<Real>::mirrored(Component c, int i, int j, Real* scratch) co
 template <class Real>
 RowTask<Real> Marcher<Real>::task(int i, int j, bool electric) {
   RowTask<Real> t;
-  const int nx = layout_.nx, ny = layout_.ny;
-  const auto& lattice = problem_.lattice;
   auto& stretch = electric ? e_stretch_ : h_stretch_;
-  for (std::size_t c = 0; c < 3; ++c) {
-    t.own[c] = fields_.row(all_components[electric ? c : c + 3], i, j);
-    t.other[c] = fields_.row(all_components[electric ? c + 3 : c], i, j);
-  }
   // Neighbour rows. Beyond an electric wall there is none; the row itself stands in, since nothing that reads
   // it moves.
   const auto neighbour = [&](Axis axis, int index, int n) {
-    if (electric) {
-      if (index > 0) return index - 1;
-      return lattice.periodic[static_cast<std::size_t>(index_of(axis))] ? n - 1 : 0;
-    }
-    if (index < n - 1) return index + 1;
-    if (index == n - 1) return lattice.periodic[static_cast<std::size_t>(index_of(axis))] ? 0 : n;
-    return n;
+    const bool joined = problem_.lattice.periodic[static_cast<std::size_t>(index_of(axis))];
+    if (electric) return index > 0 ? index - 1 : joined ? n - 1 : 0;
+    return index < n - 1 ? index + 1 : index == n - 1 && joined ? 0 : n;
   };
-  const int beside_i = neighbour(Axis::x, i, nx), beside_j = neighbour(Axis::y, j, ny);
+  const std::ptrdiff_t here = layout_.at(i, j);
+  const std::ptrdiff_t beside_x = layout_.at(neighbour(Axis::x, i, layout_.nx), j);
+  const std::ptrdiff_t beside_y = layout_.at(i, neighbour(Axis::y, j, layout_.ny));
   for (std::size_t c = 0; c < 3; ++c) {
-    const Component component = all_components[electric ? c + 3 : c];
-    t.beside_x[c] = fields_.row(component, beside_i, j);
-    t.beside_y[c] = fields_.row(component, i, beside_j);
+    Real* const own = fields_.first(all_components[electric ? c : c + 3]);
+    const Real* const other = fields_.first(all_components[electric ? c + 3 : c]);
+    t.own[c] = own + here;
+    t.other[c] = other + here;
+    t.beside_x[c] = other + beside_x;
+    t.beside_y[c] = other + beside_y;
   }
   t.inv_x = stretch[0].inv[static_cast<std::size_t>(i)];
   t.inv_y = stretch[1].inv[static_cast<std::size_t>(j)];
   t.inv_z = stretch[2].inv.data();
+  t.ahead = layout_.row;
   auto& memory = electric ? *e_memory_ : *h_memory_;
   if (const int slot = stretch[0].slot[static_cast<std::size_t>(i)]; slot >= 0) {
     t.x_b = stretch[0].b[static_cast<std::size_t>(i)];
@@ -143,6 +140,7 @@ void Marcher<Real>::add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& m
     z.c = stretch.c.data() + begin;
     z.gain_x = gain;
     z.gain_y = gain + n;
+    z.ahead = 2 * (z_cells_lo_ + z_cells_hi_);
     z.psi_x = psi;
     z.psi_y = psi + n;
     (electric ? kernels_.z_layer_e : kernels_.z_layer_h)(t, z);
@@ -168,6 +166,17 @@ void Marcher<Real>::add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& me
   if (hi == FaceKind::magnetic_wall) add(nz, -t.other[0][nz - 1], -t.other[1][nz - 1], Real(-1));
   if (lo == FaceKind::periodic) {
     add(0, t.other[0][nz - 1], t.other[1][nz - 1], Real(1));
+  }
+}
+
+/// The last thing before the recorders: tangential E on electric z walls is zero, and on a joined side the
+/// last node is the first one.
+template <class Real>
+void Marcher<Real>::hold_z_walls(const RowTask<Real>& t) {
+  const int nz = layout_.nz;
+  if (wall_is_electric(problem_, Side::z_lo)) t.own[0][0] = t.own[1][0] = Real(0);
+  if (wall_is_electric(problem_, Side::z_hi)) t.own[0][nz] = t.own[1][nz] = Real(0);
+  if (kind(Side::z_lo) == FaceKind::periodic) {
     t.own[0][nz] = t.own[0][0];
     t.own[1][nz] = t.own[1][0];
   }
@@ -211,6 +220,7 @@ void Marcher<Real>::advance_e(int i, int j) {
   add_z_walls(t, media);
   if (surface_is_active_ && surface_->touches_e(i, j)) surface_->add_e(i, j, t.own);
   if (!dipoles_.empty()) dipoles_.add_e(i, j, t.own);
+  hold_z_walls(t);
   if (captures_) captures_->take(true, i, j, fields_);
 }
 

@@ -55,6 +55,7 @@ class Marcher : public RowWork {
   RowTask<Real> task(int i, int j, bool electric);
   void add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j, bool electric);
   void add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media);
+  void hold_z_walls(const RowTask<Real>& t);
   const Real* mirrored(Component c, int i, int j, Real* scratch) const;
   FaceKind kind(Side s) const { return problem_.face(s).kind; }
 

@@ -37,12 +37,6 @@ SlabLoss slab_loss(const Problem& problem, Axis axis) {
   return loss;
 }
 
-/// Whether tangential E is held at zero on this side's outer wall.
-bool wall_is_electric(const Problem& problem, Side side) {
-  const FaceKind kind = problem.face(side).kind;
-  return kind == FaceKind::electric_wall || absorbs(kind);
-}
-
 /// Update coefficients of whole rows before compression.
 class RowPainter {
  public:
@@ -200,6 +194,10 @@ MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool
         std::string key;
         for (std::size_t c = 0; c < 3; ++c) {
           painter.paint(static_cast<int>(c), i, j, painted);
+          // Tangential E on the low wall is held at zero after the update. What its coefficients say does not
+          // matter, and the first line of a uniform row stays uniform when they follow their neighbour.
+          if (electric && c < 2 && painted.size() > 1 && wall_is_electric(problem, Side::z_lo))
+            painted[0] = painted[1];
           std::fill(values[c].begin(), values[c].end(), Pair<Real>{0, 0});
           for (std::size_t k = 0; k < painted.size(); ++k) {
             values[c][k] = {static_cast<Real>(painted[k].decay), static_cast<Real>(painted[k].gain)};

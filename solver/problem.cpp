@@ -39,6 +39,11 @@ Vec3 e_direction_of(const PlaneWave& wave) {
   return {a * ct * cp - b * sp, a * ct * sp + b * cp, -a * st};
 }
 
+bool wall_is_electric(const Problem& problem, Side side) {
+  const FaceKind kind = problem.face(side).kind;
+  return kind == FaceKind::electric_wall || absorbs(kind);
+}
+
 long Problem::last_step() const {
   return static_cast<long>(std::ceil(stop.at_s / lattice.dt_s - 1e-9));
 }

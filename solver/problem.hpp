@@ -122,6 +122,9 @@ struct Problem {
   long last_step() const;  ///< the step at which `stop.at_s` is reached
 };
 
+/// Whether a side's outer wall holds tangential E at zero: electric walls, and the back of absorbing layers.
+bool wall_is_electric(const Problem& problem, Side side);
+
 /// Thrown by everything that turns a problem into a run when the problem cannot be computed as asked. The
 /// text says what is wrong, what is allowed and what to do next.
 struct ProblemError : std::runtime_error {

@@ -9,6 +9,12 @@ RowKernels<float> row_kernels_avx512_float();
 RowKernels<double> row_kernels_base_double();
 RowKernels<double> row_kernels_avx2_double();
 RowKernels<double> row_kernels_avx512_double();
+AddIncident<float> add_incident_base_float();
+AddIncident<double> add_incident_base_double();
+AddIncident<float> add_incident_avx2_float();
+AddIncident<double> add_incident_avx2_double();
+AddIncident<float> add_incident_avx512_float();
+AddIncident<double> add_incident_avx512_double();
 SampleTable sample_table_base();
 SampleTable sample_table_avx2();
 SampleTable sample_table_avx512();
@@ -36,6 +42,20 @@ const RowKernels<double>& row_kernels(VectorCode code) {
 
 SampleTable sample_table(VectorCode code) {
   static const SampleTable table[3]{sample_table_base(), sample_table_avx2(), sample_table_avx512()};
+  return table[static_cast<int>(code)];
+}
+
+template <>
+AddIncident<float> add_incident(VectorCode code) {
+  static const AddIncident<float> table[3]{add_incident_base_float(), add_incident_avx2_float(),
+                                           add_incident_avx512_float()};
+  return table[static_cast<int>(code)];
+}
+
+template <>
+AddIncident<double> add_incident(VectorCode code) {
+  static const AddIncident<double> table[3]{add_incident_base_double(), add_incident_avx2_double(),
+                                            add_incident_avx512_double()};
   return table[static_cast<int>(code)];
 }
 

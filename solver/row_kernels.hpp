@@ -35,6 +35,7 @@ struct RowTask {
   const Real* inv_z = nullptr;  ///< along z, one per k, aligned and padded like a row
   const MediaSpan<Real>* spans = nullptr;
   int n_spans = 0;
+  std::ptrdiff_t ahead = 0;  ///< from this row to the one that will be advanced next; only a hint
   // Layer memory, one row per differentiated component; null outside the layers of that axis.
   //   psi(n) = b psi(n-1) + c difference,  c in 1/m; "first" belongs to the component next(axis), "second" to
   //   the component after that.
@@ -55,7 +56,8 @@ struct ZLayerTask {
   const Real* c = nullptr;       ///< [n], 1/m
   const Real* gain_x = nullptr;  ///< [n] gain of the x component
   const Real* gain_y = nullptr;
-  Real* psi_x = nullptr;  ///< [n]
+  std::ptrdiff_t ahead = 0;  ///< from this row's psi to the next row's; only a hint
+  Real* psi_x = nullptr;     ///< [n]
   Real* psi_y = nullptr;
 };
 

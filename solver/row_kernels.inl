@@ -18,9 +18,10 @@ struct Vector {
 /// psi and the stretched difference of one component along one axis.
 template <class Real, bool layer>
 inline typename Vector<Real>::Aligned stretched(typename Vector<Real>::Aligned difference, Real inv, Real b,
-                                                Real c, Real* psi) {
+                                                Real c, Real* psi, std::ptrdiff_t psi_ahead) {
   using V = Vector<Real>;
   if constexpr (layer) {
+    __builtin_prefetch(psi + psi_ahead, 1);
     const auto memory = b * V::load(psi) + c * difference;
     V::store(psi, memory);
     return inv * difference + memory;
@@ -45,20 +46,29 @@ inline void move(Real* own, int k, int in_span, int length, const MediaSpan<Real
 template <class Real, bool layer_x, bool layer_y, bool mixed>
 void span_e(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   using V = Vector<Real>;
+  constexpr int line = 64 / static_cast<int>(sizeof(Real));
   const int length = span.end - span.begin;
   const Real *hx_row = t.other[0], *hy_row = t.other[1], *hz_row = t.other[2];
   const Real *hy_im = t.beside_x[1], *hz_im = t.beside_x[2], *hx_jm = t.beside_y[0], *hz_jm = t.beside_y[2];
   for (int k = span.begin; k < span.end; k += V::width) {
+    // The next row's values are on their way while this one is computed; H rows follow E and find theirs in
+    // cache.
+    if (k % line == 0) {
+      for (int c = 0; c < 3; ++c) {
+        __builtin_prefetch(t.own[c] + k + t.ahead, 1);
+        __builtin_prefetch(t.other[c] + k + t.ahead, 1);
+      }
+    }
     const auto hx = V::load(hx_row + k), hy = V::load(hy_row + k), hz = V::load(hz_row + k);
     const auto inv_z = V::load(t.inv_z + k);
-    const auto dy_hz =
-        stretched<Real, layer_y>(hz - V::load(hz_jm + k), t.inv_y, t.y_b, t.y_c, t.y_psi_second + k);
-    const auto dy_hx =
-        stretched<Real, layer_y>(hx - V::load(hx_jm + k), t.inv_y, t.y_b, t.y_c, t.y_psi_first + k);
-    const auto dx_hy =
-        stretched<Real, layer_x>(hy - V::load(hy_im + k), t.inv_x, t.x_b, t.x_c, t.x_psi_second + k);
-    const auto dx_hz =
-        stretched<Real, layer_x>(hz - V::load(hz_im + k), t.inv_x, t.x_b, t.x_c, t.x_psi_first + k);
+    const auto dy_hz = stretched<Real, layer_y>(hz - V::load(hz_jm + k), t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_second + k, 2 * t.ahead);
+    const auto dy_hx = stretched<Real, layer_y>(hx - V::load(hx_jm + k), t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_first + k, 2 * t.ahead);
+    const auto dx_hy = stretched<Real, layer_x>(hy - V::load(hy_im + k), t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_second + k, 2 * t.ahead);
+    const auto dx_hz = stretched<Real, layer_x>(hz - V::load(hz_im + k), t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_first + k, 2 * t.ahead);
     const auto dz_hy = inv_z * (hy - V::load_any(hy_row + k - 1));
     const auto dz_hx = inv_z * (hx - V::load_any(hx_row + k - 1));
     const int s = k - span.begin;
@@ -77,14 +87,14 @@ void span_h(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   for (int k = span.begin; k < span.end; k += V::width) {
     const auto ex = V::load(ex_row + k), ey = V::load(ey_row + k), ez = V::load(ez_row + k);
     const auto inv_z = V::load(t.inv_z + k);
-    const auto dy_ez =
-        stretched<Real, layer_y>(V::load(ez_jp + k) - ez, t.inv_y, t.y_b, t.y_c, t.y_psi_second + k);
-    const auto dy_ex =
-        stretched<Real, layer_y>(V::load(ex_jp + k) - ex, t.inv_y, t.y_b, t.y_c, t.y_psi_first + k);
-    const auto dx_ey =
-        stretched<Real, layer_x>(V::load(ey_ip + k) - ey, t.inv_x, t.x_b, t.x_c, t.x_psi_second + k);
-    const auto dx_ez =
-        stretched<Real, layer_x>(V::load(ez_ip + k) - ez, t.inv_x, t.x_b, t.x_c, t.x_psi_first + k);
+    const auto dy_ez = stretched<Real, layer_y>(V::load(ez_jp + k) - ez, t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_second + k, 2 * t.ahead);
+    const auto dy_ex = stretched<Real, layer_y>(V::load(ex_jp + k) - ex, t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_first + k, 2 * t.ahead);
+    const auto dx_ey = stretched<Real, layer_x>(V::load(ey_ip + k) - ey, t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_second + k, 2 * t.ahead);
+    const auto dx_ez = stretched<Real, layer_x>(V::load(ez_ip + k) - ez, t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_first + k, 2 * t.ahead);
     const auto dz_ey = inv_z * (V::load_any(ey_row + k + 1) - ey);
     const auto dz_ex = inv_z * (V::load_any(ex_row + k + 1) - ex);
     const int s = k - span.begin;

@@ -16,4 +16,11 @@ SampleTable sample_table_avx2() {
   return vector_avx2::sample_table;
 }
 
+AddIncident<float> add_incident_avx2_float() {
+  return vector_avx2::add_incident<float>;
+}
+AddIncident<double> add_incident_avx2_double() {
+  return vector_avx2::add_incident<double>;
+}
+
 }  // namespace wanewall

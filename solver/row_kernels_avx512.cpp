@@ -16,4 +16,11 @@ SampleTable sample_table_avx512() {
   return vector_avx512::sample_table;
 }
 
+AddIncident<float> add_incident_avx512_float() {
+  return vector_avx512::add_incident<float>;
+}
+AddIncident<double> add_incident_avx512_double() {
+  return vector_avx512::add_incident<double>;
+}
+
 }  // namespace wanewall

@@ -16,4 +16,11 @@ SampleTable sample_table_base() {
   return vector_base::sample_table;
 }
 
+AddIncident<float> add_incident_base_float() {
+  return vector_base::add_incident<float>;
+}
+AddIncident<double> add_incident_base_double() {
+  return vector_base::add_incident<double>;
+}
+
 }  // namespace wanewall

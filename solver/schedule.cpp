@@ -1,5 +1,9 @@
 #include "solver/schedule.hpp"
 
+#include <unistd.h>
+
+#include <algorithm>
+
 namespace wanewall {
 namespace {
 
@@ -13,13 +17,17 @@ void plain_sweep(const RowExtent& rows, int lo, int hi, RowWork& work) {
 #pragma omp barrier
 }
 
-/// H follows E one row and one plane behind, while the rows it needs are still in cache. The last plane of a
+/// H follows E one row and one plane behind, while the rows it needs are still in cache. Rows are taken in
+/// bands of j narrow enough that two planes of a band stay in the cache next to the core. The last plane of a
 /// slab waits for the next slab's first.
 void fused_sweep(const RowExtent& rows, int lo, int hi, RowWork& work) {
-  for (int i = lo; i < hi; ++i) {
-    for (int j = 0; j <= rows.n_j; ++j) {
-      if (j < rows.n_j) work.advance_e(i, j);
-      if (i > lo && j > 0) work.advance_h(i - 1, j - 1);
+  for (int j_lo = 0; j_lo <= rows.n_j; j_lo += rows.band) {
+    const int j_hi = std::min(j_lo + rows.band, rows.n_j + 1);
+    for (int i = lo; i < hi; ++i) {
+      for (int j = j_lo; j < j_hi; ++j) {
+        if (j < rows.n_j) work.advance_e(i, j);
+        if (i > lo && j > 0) work.advance_h(i - 1, j - 1);
+      }
     }
   }
 #pragma omp barrier
@@ -29,6 +37,13 @@ void fused_sweep(const RowExtent& rows, int lo, int hi, RowWork& work) {
 }
 
 }  // namespace
+
+int rows_per_band(std::size_t row_bytes) {
+  const long cache = sysconf(_SC_LEVEL2_CACHE_SIZE);
+  const double bytes = cache > 0 ? static_cast<double>(cache) : 512.0 * 1024.0;
+  // Six fields, two planes, and half of the cache left for what else a row needs.
+  return std::clamp(static_cast<int>(0.5 * bytes / (12.0 * static_cast<double>(row_bytes))), 4, 4096);
+}
 
 std::vector<int> deal_planes(int n_i, int threads) {
   std::vector<int> begin(static_cast<std::size_t>(threads) + 1);

@@ -6,6 +6,7 @@
 // Any order that keeps these gives the same bits, because a row's own arithmetic is fixed.
 #pragma once
 
+#include <cstddef>
 #include <vector>
 
 #include "solver/problem.hpp"
@@ -24,7 +25,11 @@ class RowWork {
 struct RowExtent {
   int n_i = 0;
   int n_j = 0;
+  int band = 4096;  ///< rows that the fused sweep takes at a time, see rows_per_band
 };
+
+/// Rows of which two planes, all six fields, fill half of this processor's second-level cache.
+int rows_per_band(std::size_t row_bytes);
 
 /// Planes i dealt to threads as slabs of nearly equal size; slab t is [begin[t], begin[t + 1]).
 std::vector<int> deal_planes(int n_i, int threads);

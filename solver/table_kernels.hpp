@@ -14,4 +14,10 @@ inline constexpr int table_taps = 8;
 using SampleTable = void (*)(const double* table, double first, double step, int n, double* out);
 SampleTable sample_table(VectorCode code);
 
+/// out[m] += factor gain[m] incident[m], m < n, the product in double.
+template <class Real>
+using AddIncident = void (*)(Real* out, double factor, const double* gain, const double* incident, int n);
+template <class Real>
+AddIncident<Real> add_incident(VectorCode code);
+
 }  // namespace wanewall

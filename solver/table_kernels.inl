@@ -32,5 +32,12 @@ inline void sample_table(const double* __restrict table, double first, double st
   }
 }
 
+template <class Real>
+void add_incident(Real* __restrict out, double factor, const double* __restrict gain,
+                  const double* __restrict incident, int n) {
+#pragma omp simd
+  for (int m = 0; m < n; ++m) out[m] += static_cast<Real>(factor * gain[m] * incident[m]);
+}
+
 }  // namespace WANEWALL_VECTOR_NAMESPACE
 }  // namespace wanewall

@@ -205,8 +205,7 @@ void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electri
     const int component = index_of(axis_of(term.corrected));
     const double* gain = all_gains[static_cast<std::size_t>(component)].data() + term.z.begin;
     Real* out = own[component] + term.z.begin;
-    for (int n = 0; n < term.z.size(); ++n)
-      out[n] += static_cast<Real>(term.factor_per_m * gain[n] * incident[static_cast<std::size_t>(n)]);
+    add_(out, term.factor_per_m, gain, incident.data(), term.z.size());
   }
   for (const Term& term : z_terms_[field]) {
     if (!term.x.contains(i) || !term.y.contains(j)) continue;

@@ -8,6 +8,7 @@
 
 #include "solver/illumination/incident_wave.hpp"
 #include "solver/media_rows.hpp"
+#include "solver/table_kernels.hpp"
 
 namespace wanewall {
 
@@ -54,6 +55,7 @@ class TotalFieldSurface {
   Lattice lattice_;
   PlaneWave plane_wave_;
   long generation_ = 0;
+  AddIncident<Real> add_ = add_incident<Real>(best_vector_code());
   WaveMedium medium_;
   std::unique_ptr<IncidentWave> wave_;
   std::array<std::vector<double>, 3> e_gain_, h_gain_;  // [component][k]
