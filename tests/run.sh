@@ -15,4 +15,4 @@ cmake -S . -B build -DCMAKE_BUILD_TYPE=Release -DWANEWALL_TESTS=ON -DWANEWALL_WE
 cmake --build build -j "$jobs"
 
 echo "== tests"
-ctest --test-dir build --output-on-failure -j 2
+ctest --test-dir build --output-on-failure --no-tests=error -j 2
