@@ -16,6 +16,7 @@ constexpr double most_tests = 5e7;
 constexpr int nothing_yet = -2;
 /// Half cells beyond the surface's ends that must be in the same medium for the wave to enter cleanly.
 constexpr int beyond = 3;
+constexpr std::size_t heights_at_end = 7;  ///< 2 beyond + 1
 
 /// What stands at one height of the surface: the topmost object (-1: background) and its medium.
 struct Seen {
@@ -32,7 +33,7 @@ class Surface {
       cell_m_[static_cast<std::size_t>(index_of(a))] = lattice_.along(a).largest_cell_m();
     // Heights in half cells.
     first_ = 2 * wave.box_lo[2] - beyond;
-    seen_.assign(static_cast<std::size_t>(2 * (wave.box_hi[2] - wave.box_lo[2] + beyond) + 1), {});
+    seen_.assign(2 * static_cast<std::size_t>(wave.box_hi[2] - wave.box_lo[2] + beyond) + 1, {});
     for (std::size_t n = 0; n < problem.objects.size(); ++n)
       if (may_touch(bounds_of(problem.objects[n].shape))) near_.push_back(static_cast<int>(n));
   }
@@ -44,6 +45,14 @@ class Surface {
       for (bool high : {false, true})
         if (exists(side_of(a, high)) && !scan_side(a, high, culprit)) return false;
     return scan_ends(culprit);
+  }
+
+  /// The object of a perfect conductor that the surface runs through; -1 when there is none.
+  int conductor() const {
+    for (const Seen& seen : seen_)
+      if (seen.object >= 0 && problem_.media[static_cast<std::size_t>(seen.medium)].is_perfect())
+        return seen.object;
+    return -1;
   }
 
   bool is_homogeneous() const {
@@ -59,8 +68,8 @@ class Surface {
   /// Whether the face across z where the wave enters has one medium on both sides of it.
   bool enters_cleanly() const {
     const bool from_below = propagation_of(wave_)[2] > 0.0;
-    const std::size_t begin = from_below ? 0 : seen_.size() - 2 * beyond - 1;
-    for (std::size_t h = begin; h < begin + 2 * beyond + 1; ++h)
+    const std::size_t begin = from_below ? 0 : seen_.size() - heights_at_end;
+    for (std::size_t h = begin; h < begin + heights_at_end; ++h)
       if (seen_[h].object != nothing_yet && seen_[h].medium != entry_medium()) return false;
     return true;
   }
@@ -252,6 +261,15 @@ int check_surface(Cursor& root, Reading& reading, const Scene& scene) {
                                   problem.lattice.clear_node(Side::z_hi) - wave.box_hi[2]})),
             "widen clear_volume, make the object smaller, or write it as a layer or half_space across z"});
   }
+  if (const int conductor = surface.conductor(); conductor >= 0)
+    reject(
+        scene.file,
+        {entries[static_cast<std::size_t>(conductor)].place(),
+         fmt::format("{} is a perfect conductor on the surface of the plane wave",
+                     problem.objects[static_cast<std::size_t>(conductor)].label),
+         "perfect conductors inside the surface; over metal ground, periodic faces at x-, x+, y- and y+, so "
+         "that the wave only enters from above",
+         "keep the conductor inside the surface, make the sides periodic, or give it a conductivity"});
   if (!surface.is_homogeneous() && !is_along_z(wave))
     block.reject_text(
         "from", "an oblique plane wave on layers",

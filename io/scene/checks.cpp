@@ -47,7 +47,7 @@ double lattice_end_hz(const Problem& problem, const Medium& medium) {
 
 void check_size(Cursor& root, const Scene& scene) {
   const Problem& problem = scene.problem;
-  const auto bounded = [&](Cursor block, std::string_view key, const std::string& what, double bytes) {
+  const auto bounded = [&](const Cursor& block, std::string_view key, const std::string& what, double bytes) {
     if (bytes > most_bytes)
       block.reject_text(key, fmt::format("{} needs {:.3g} bytes of memory", what, bytes),
                         fmt::format("at most {:.3g} bytes", most_bytes), "ask for less");

@@ -73,7 +73,7 @@ const Block& scene_block() {
   static const Block b{
       "scene",
       "A scene file. Positions and directions are in one right-handed frame with +z up.",
-      {with_default("title", text(), "untitled", "What the scene shows."),
+      {derived("title", text(), "the file's name", "What the scene shows."),
        required("band", list_of(above_zero(Family::frequency), 2, 2),
                 "Lowest and highest frequency of the results."),
        required("clear_volume", block(clear_volume()), "What you want to look at."),

@@ -3,13 +3,19 @@
 
 #include <algorithm>
 #include <cmath>
+#include <filesystem>
 
 #include "io/scene/read.hpp"
 
 namespace wanewall::scene {
 
 void read_head(Cursor& root, Scene& scene) {
-  scene.title = root.text("title");
+  if (root.has("title")) {
+    scene.title = root.text("title");
+  } else {
+    scene.title = std::filesystem::path(scene.file).filename().string();
+    root.use("title", scene.title);
+  }
   const auto [lo_hz, hi_hz] = root.pair("band");
   if (!(lo_hz < hi_hz)) root.reject("band", "two frequencies, the lower one first", "swap or move the two");
   scene.band_lo_hz = lo_hz;

@@ -151,8 +151,7 @@ void read_layers(Cursor& root, Scene& scene) {
     PolynomialGrading grading;
     grading.order = block.number("order");
     // What the face says itself goes before what every face says.
-    const bool by_sigma =
-        block.has_itself("sigma_max") || (block.has("sigma_max") && !block.has_itself("reflection"));
+    const bool by_sigma = block.has("sigma_max") && !block.has_itself("reflection");
     if (by_sigma) {
       grading.sigma_max_s_per_m = block.quantity("sigma_max");
     } else if (block.has("reflection") || has_goal) {

@@ -120,6 +120,22 @@ TEST_CASE("A face takes from every_face what it does not say itself") {
   CHECK(p.face(Side::z_hi).layer.cells() == 8);
 }
 
+TEST_CASE("A face's own reflection or sigma_max goes before that of every face") {
+  const auto sigma_max = [](const std::string& shell, Side side) {
+    const Problem p = plain(wave_from_above + "shell: " + shell + "\n").problem;
+    return p.face(side).layer.sigma_e_s_per_m.back() / std::pow(0.9, 3.0);
+  };
+  const double for_50_db = -4.0 * std::log(std::pow(10.0, -50.0 / 20.0)) / (2.0 * eta0_ohm * 0.1);
+  const std::string own_reflection =
+      "{goal: -20 dB, every_face: {sigma_max: 7 S/m}, faces: {x-: {reflection: -50 dB}}}";
+  CHECK(sigma_max(own_reflection, Side::x_lo) == Approx(for_50_db));
+  CHECK(sigma_max(own_reflection, Side::x_hi) == Approx(7.0));
+  const std::string own_sigma =
+      "{goal: -20 dB, every_face: {reflection: -50 dB}, faces: {x-: {sigma_max: 7 S/m}}}";
+  CHECK(sigma_max(own_sigma, Side::x_lo) == Approx(7.0));
+  CHECK(sigma_max(own_sigma, Side::x_hi) == Approx(for_50_db));
+}
+
 TEST_CASE("A layer without goal, reflection or sigma_max follows the rule for its cell and background") {
   const Problem p = plain("background: oil\nmedia: {oil: {permittivity: 2.25}}\n" + wave_from_above).problem;
   // S. D. Gedney, IEEE Trans. Antennas Propag. 44, 1630 (1996): 0.8 (m + 1) / (eta0 d sqrt(eps_r)).
