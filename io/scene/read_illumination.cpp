@@ -74,11 +74,11 @@ Pulse read_pulse(Cursor& illumination, const Scene& scene, const Reading& readin
 
 constexpr double perpendicular = 1e-9;  ///< cosine below which two directions count as perpendicular
 
-/// Walls and periodic sides must carry the wave as it is: a wave along a periodic axis would need a phase
-/// shift between the two faces, and a wall beside the wave would disturb it before it reaches anything.
-void check_sides(const Cursor& block, const Problem& problem, const PlaneWave& wave,
-                 std::array<bool, 6>& is_open) {
-  const Vec3 k = propagation_of(wave), e = e_direction_of(wave);
+/// A wave along a periodic axis would need a phase shift between the two faces. A wall beside the wave would
+/// cut the surface where its edges are not those of the medium, so walls may only stand straight ahead of the
+/// wave, where no side of the surface ends on them.
+void check_sides(const Cursor& block, const Problem& problem, const PlaneWave& wave) {
+  const Vec3 k = propagation_of(wave);
   for (Axis a : all_axes) {
     const auto i = static_cast<std::size_t>(index_of(a));
     if (problem.lattice.periodic[i] && std::abs(k[i]) > perpendicular)
@@ -88,34 +88,22 @@ void check_sides(const Cursor& block, const Problem& problem, const PlaneWave& w
                         fmt::format("turn the wave, or make {}- and {}+ absorbing", name_of(a), name_of(a)));
   }
   for (Side side : all_sides) {
-    const Axis a = axis_of(side);
-    const auto i = static_cast<std::size_t>(index_of(a));
     const FaceKind kind = problem.face(side).kind;
-    is_open[static_cast<std::size_t>(index_of(side))] = !absorbs(kind);
     if (absorbs(kind) || kind == FaceKind::periodic) continue;
-    const double outward = is_high(side) ? k[i] : -k[i];
-    if (std::abs(outward) <= perpendicular) {
-      // Beside the wave: an electric wall needs E along its normal, a magnetic wall H along it.
-      const bool e_along_normal = std::abs(e[i]) > 1.0 - perpendicular;
-      const bool h_along_normal = std::abs(e[i]) <= perpendicular;
-      if (kind == FaceKind::electric_wall ? e_along_normal : h_along_normal) continue;
-      block.reject_text(
-          "e_angle",
-          fmt::format("the {} at {} beside the plane wave does not fit its E", name_of(kind), name_of(side)),
-          kind == FaceKind::electric_wall ? "E along the normal of an electric wall beside the wave"
-                                          : "E along a magnetic wall beside the wave",
-          "turn e_angle or make the face absorbing");
-    }
-    bool reaches_only_this = outward > 1.0 - perpendicular;
-    for (Axis across : {next(a), previous(a)})
-      for (bool high : {false, true})
-        if (absorbs(problem.face(side_of(across, high)).kind)) reaches_only_this = false;
-    if (!reaches_only_this)
-      block.reject_text(
-          "from",
-          fmt::format("the plane wave cannot meet the {} at {} like this", name_of(kind), name_of(side)),
-          "a wall straight ahead of the wave, with walls or periodic faces beside it; or absorbing faces",
-          fmt::format("make {} absorbing; for a metal ground paint a perfect conductor", name_of(side)));
+    const Axis a = axis_of(side);
+    const double outward = (is_high(side) ? 1.0 : -1.0) * k[static_cast<std::size_t>(index_of(a))];
+    const bool is_ahead = outward > 1.0 - perpendicular;
+    const auto is_periodic = [&](Axis across) {
+      return problem.lattice.periodic[static_cast<std::size_t>(index_of(across))];
+    };
+    if (is_ahead && is_periodic(next(a)) && is_periodic(previous(a))) continue;
+    block.reject_text(
+        "from",
+        fmt::format("the plane wave and the {} at {} do not go together", name_of(kind), name_of(side)),
+        "a wall only straight ahead of the wave, with periodic faces on the four sides between",
+        fmt::format("make {} absorbing or, at normal incidence, periodic; for a metal ground paint a perfect "
+                    "conductor",
+                    name_of(side)));
   }
 }
 
@@ -123,8 +111,7 @@ void check_sides(const Cursor& block, const Problem& problem, const PlaneWave& w
 void place_surface(Cursor& block, const Problem& problem, PlaneWave& wave) {
   const Lattice& lattice = problem.lattice;
   const int inset = static_cast<int>(block.quantity("surface_inset"));
-  std::array<bool, 6> is_open{};
-  check_sides(block, problem, wave, is_open);
+  check_sides(block, problem, wave);
   const Vec3 k = propagation_of(wave);
   const bool is_column = std::count(lattice.periodic.begin(), lattice.periodic.end(), true) == 2;
   for (Axis a : all_axes) {
@@ -134,7 +121,7 @@ void place_surface(Cursor& block, const Problem& problem, PlaneWave& wave) {
       const auto s = static_cast<std::size_t>(index_of(side));
       // In a column only the face where the wave enters exists; the total field runs on to the other end.
       const bool is_exit = is_column && (high ? k[i] : -k[i]) > 0.5;
-      wave.box_face[s] = !is_open[s] && !is_exit;
+      wave.box_face[s] = absorbs(problem.face(side).kind) && !is_exit;
       const int node = lattice.clear_node(side) + (wave.box_face[s] ? (high ? -inset : inset) : 0);
       (high ? wave.box_hi : wave.box_lo)[i] = node;
     }

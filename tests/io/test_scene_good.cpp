@@ -192,15 +192,18 @@ TEST_CASE("One periodic axis leaves the surface open only along it") {
   CHECK(p.plane_wave->box_hi == Index3{40, 44, 44});
 }
 
-TEST_CASE("Walls that fit the wave leave the surface open") {
-  // E along x: electric walls across x and magnetic walls across y do not disturb it.
-  const Problem p = plain(wave_from_above +
-                          "shell: {faces: {x-: {kind: electric_wall}, x+: {kind: electric_wall}, y-: {kind: "
-                          "magnetic_wall}, y+: {kind: magnetic_wall}, z-: {kind: electric_wall}}}\n")
-                        .problem;
-  CHECK(p.plane_wave->box_face == std::array<bool, 6>{false, false, false, false, false, true});
-  CHECK(p.plane_wave->box_lo == Index3{0, 0, 0});
-  CHECK(p.lattice.cells() == Index3{40, 40, 50});
+TEST_CASE("A wall straight ahead between periodic sides leaves the surface open there") {
+  const std::string sides =
+      "x-: {kind: periodic}, x+: {kind: periodic}, y-: {kind: periodic}, y+: {kind: periodic}";
+  for (const std::string kind : {"electric_wall", "magnetic_wall"}) {
+    const Problem p =
+        plain(wave_from_above + "shell: {faces: {" + sides + ", z-: {kind: " + kind + "}}}\n").problem;
+    CHECK(p.plane_wave->box_face == std::array<bool, 6>{false, false, false, false, false, true});
+    CHECK(p.plane_wave->box_lo == Index3{0, 0, 0});
+    CHECK(p.lattice.cells() == Index3{40, 40, 50});
+  }
+  CHECK_THROWS_AS(plain(wave_from_above + "shell: {faces: {" + sides + ", z+: {kind: electric_wall}}}\n"),
+                  SceneError);
 }
 
 TEST_CASE("Unequal cells, turned box, clamped positions, chosen audit") {
