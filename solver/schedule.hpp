@@ -28,7 +28,7 @@ struct RowExtent {
   int band = 4096;  ///< rows that the fused sweep takes at a time, see rows_per_band
 };
 
-/// Rows of which two planes, all six fields, fill half of this processor's second-level cache.
+/// Rows of which two planes, all six fields, fill half of a second-level cache of 1 MiB.
 int rows_per_band(std::size_t row_bytes);
 
 /// Planes i dealt to threads as slabs of nearly equal size; slab t is [begin[t], begin[t + 1]).
