@@ -60,7 +60,7 @@ constexpr const char* method_of_split =
 constexpr const char* method_of_tapers =
     R"(- Where the face is not periodic, the clear part is read under tapers: `outgoing` and `returned` take its middle for
   all of it, and the floor rises towards grazing. For the exact lattice field of a dipole two wavelengths before a face
-  six wavelengths wide it is -55, -52, -44, -36, -15 dB in the bins at 5, 15, 25, 35, 45 degrees, with no reading
+  six wavelengths wide it is -57, -55, -47, -38, -18 dB in the bins at 5, 15, 25, 35, 45 degrees, with no reading
   beyond. Narrow faces do worse, wide ones better. To check a better shell than the floor shows, compare with a run
   whose face is much thicker.
 - `walk-off`: a wave at that angle comes back more than half the clear width to the side, or ends in a side shell. Less

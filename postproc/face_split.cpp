@@ -42,14 +42,18 @@ Parts split(const Matrix& e0, const Matrix& e1, const Matrix& e2, const std::arr
           normal_wavenumber(medium, basis[0].eigenvalue_per_m2[p] + basis[1].eigenvalue_per_m2[q], spacing_m);
       const Complex t = std::exp(-j * kz * spacing_m);
       const Complex there_and_back = t - 1.0 / t;
-      const bool at_cut_off = std::abs(there_and_back) < 1e-9;
+      // Closer to cut-off than a tapered basis tells waves apart, one wave's b would be its error blown up
+      // without limit, and the second taper would spread that over all angles. Nothing is known of such a
+      // wave but its size.
+      const double least = std::max(1e-9, 0.2 * least_cosine * medium.w_per_m() * spacing_m);
+      const bool at_cut_off = std::abs(there_and_back) < least;
       const Complex b = at_cut_off ? 0.0 : (e0(p, q) * t - e1(p, q)) / there_and_back;
       parts.returned(p, q) = b;
       parts.outgoing(p, q) = e0(p, q) - b;
       const Complex delta = t * (e0(p, q) - (t + 1.0 / t) * e1(p, q) + e2(p, q)) / there_and_back;
       const double divisor = std::max(std::abs(2.0 * std::sin(0.5 * spacing_m * kz)),
                                       least_cosine * medium.w_per_m() * spacing_m);
-      parts.floor(p, q) = at_cut_off ? 0.0 : delta / divisor;
+      parts.floor(p, q) = !at_cut_off ? delta / divisor : least_cosine > 0.0 ? e0(p, q) : Complex(0.0);
     }
   }
   return parts;

@@ -17,8 +17,8 @@ std::string_view name_of(Schedule schedule) {
 }
 
 std::string_view name_of(StopReason reason) {
-  constexpr std::array<std::string_view, 4> names{"reached its end", "energy fell below its limit",
-                                                  "interrupted", "fields became non-finite"};
+  constexpr std::array<std::string_view, 4> names{"reached its end", "ended because its energy had fallen",
+                                                  "was interrupted", "broke off with non-finite fields"};
   return names[static_cast<std::size_t>(reason)];
 }
 

@@ -41,7 +41,7 @@ void check_floor(const FaceSplit& split) {
     const SplitPower& total = split.totals[pol];
     CAPTURE(pol, db(total.returned / total.outgoing), db(total.floor / total.outgoing));
     CHECK(total.floor > total.returned);
-    CHECK(db(total.floor / total.returned) < 27.0);  // a floor, not an excuse
+    CHECK(db(total.floor / total.returned) < 28.0);  // a floor, not an excuse
   }
 }
 
@@ -82,7 +82,7 @@ TEST_CASE("What the tables say of the taper's error is what it is", "[face_split
   // The floors quoted under every table made with tapers.
   const TestFace face = face_of_the_tables();
   const FaceSplit split = split_of(face, waves_of(face, {}));
-  const std::array<double, 5> said_db{-55.0, -52.0, -44.0, -36.0, -15.0};
+  const std::array<double, 5> said_db{-57.0, -55.0, -47.0, -38.0, -18.0};
   for (std::size_t bin = 0; bin < said_db.size(); ++bin) {
     const SplitPower &te = split.bins[0][bin], &tm = split.bins[1][bin];
     CHECK(db((te.floor + tm.floor) / (te.outgoing + tm.outgoing)) == Approx(said_db[bin]).margin(1.0));
