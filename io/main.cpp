@@ -1,6 +1,7 @@
 // The program's door: reads the command line, runs the chosen command, turns every failure into its exit
 // code.
 #include <CLI/CLI.hpp>
+#include <csignal>
 #include <cstdio>
 #include <exception>
 #include <filesystem>
@@ -87,6 +88,8 @@ ExitCode run_guarded(const wanewall::Action& action) {
 }  // namespace
 
 int main(int argc, char** argv) {
+  // A limit on the size of files is then a write that fails, told like a full disk, and not a sudden end.
+  std::signal(SIGXFSZ, SIG_IGN);
   CLI::App app{"Electromagnetic scattering on a Yee lattice inside an audited absorbing shell.", "wanewall"};
   app.set_version_flag("--version", wanewall::version_text());
   app.require_subcommand(1);
