@@ -11,8 +11,10 @@
 namespace wanewall::record_layout {
 namespace {
 
-constexpr std::array<std::pair<FaceKind, const char*>, 5> face_words{
-    {{FaceKind::cfs_pml, "cfs_pml"},
+constexpr std::array<std::pair<FaceKind, const char*>, 7> face_words{
+    {{FaceKind::moebius, "moebius"},
+     {FaceKind::one_way, "one_way"},
+     {FaceKind::cfs_pml, "cfs_pml"},
      {FaceKind::matched_slab, "matched_slab"},
      {FaceKind::electric_wall, "electric_wall"},
      {FaceKind::magnetic_wall, "magnetic_wall"},

@@ -7,8 +7,8 @@
 namespace wanewall {
 
 std::string_view name_of(FaceKind kind) {
-  constexpr std::array<std::string_view, 5> names{"cfs_pml", "matched_slab", "electric_wall", "magnetic_wall",
-                                                  "periodic"};
+  constexpr std::array<std::string_view, 7> names{"moebius",       "cfs_pml",       "matched_slab", "one_way",
+                                                  "electric_wall", "magnetic_wall", "periodic"};
   return names[static_cast<std::size_t>(kind)];
 }
 
@@ -41,7 +41,7 @@ Vec3 e_direction_of(const PlaneWave& wave) {
 
 bool wall_is_electric(const Problem& problem, Side side) {
   const FaceKind kind = problem.face(side).kind;
-  return kind == FaceKind::electric_wall || absorbs(kind);
+  return kind == FaceKind::electric_wall || has_layer(kind);
 }
 
 long Problem::last_step() const {

@@ -21,17 +21,26 @@ constexpr std::size_t bytes_of(Precision p) {
   return p == Precision::single_precision ? 4 : 8;
 }
 
-enum class FaceKind { cfs_pml, matched_slab, electric_wall, magnetic_wall, periodic };
+enum class FaceKind { moebius, cfs_pml, matched_slab, one_way, electric_wall, magnetic_wall, periodic };
 std::string_view name_of(FaceKind kind);
+/// Whether the kind has layer cells outside the clear volume.
+constexpr bool has_layer(FaceKind kind) {
+  return kind == FaceKind::moebius || kind == FaceKind::cfs_pml || kind == FaceKind::matched_slab;
+}
 constexpr bool absorbs(FaceKind kind) {
-  return kind == FaceKind::cfs_pml || kind == FaceKind::matched_slab;
+  return has_layer(kind) || kind == FaceKind::one_way;
 }
 
-/// One face of the shell. The table has as many cells as the lattice's shell on that side; it is empty for
-/// walls and periodic faces. `matched_slab` uses only the conductivities of the table.
+/// One face of the shell. Its table has as many cells as the lattice's shell on that side: `moebius` of a
+/// moebius face, `layer` of the other layers; `matched_slab` uses only the conductivities. Walls, one_way and
+/// periodic faces have none.
 struct Face {
   FaceKind kind = FaceKind::electric_wall;
   LayerTable layer;
+  MoebiusTable moebius;
+  int one_way_order = 1;  ///< 1 or 2
+
+  int cells() const { return kind == FaceKind::moebius ? moebius.cells() : layer.cells(); }
 };
 
 /// Plane wave through a total-field/scattered-field surface.

@@ -46,7 +46,7 @@ Problem full_scene(int clear_cells, int threads) {
   grading.alpha_max_s_per_m = 0.01;
   for (Side side : all_sides) {
     const auto at = static_cast<std::size_t>(index_of(side));
-    problem.faces[at] = {FaceKind::cfs_pml, polynomial_layer(grading, shell)};
+    problem.faces[at] = {FaceKind::cfs_pml, polynomial_layer(grading, shell), {}, 1};
     problem.lattice.shell_cells[at] = shell;
   }
   PlaneWave wave;

@@ -18,6 +18,17 @@ struct LayerTable {
   int cells() const { return static_cast<int>(sigma_e_s_per_m.size()); }
 };
 
+/// Cell d of a Moebius layer lies between its nodes d and d + 1, counted outwards; node 0 is the layer's
+/// first node. A cell multiplies a wave of the lattice by  (1 - s q)/(1 + s q),  q = j tan(k_n d/2), with
+///   s = kappa + sigma / (alpha + eps0 p),   p = (2/dt) (1 - z^-1)/(1 + z^-1),   z = exp(j omega dt).
+/// kappa > 0, sigma >= 0, alpha >= 0. The order of the cells does not matter.
+///   Sources of the idea: A. Chern, J. Comput. Phys. 381, 91 (2019); M. N. Guddati and K.-W. Lim, Int. J.
+///   Numer. Meth. Eng. 66, 949 (2006). The form for the Yee lattice is this project's own.
+struct MoebiusTable {
+  std::vector<double> kappa, sigma_s_per_m, alpha_s_per_m;
+  int cells() const { return static_cast<int>(kappa.size()); }
+};
+
 /// Polynomial grading: sigma = sigma_max u^order, kappa = 1 + (kappa_max - 1) u^order, alpha = alpha_max
 /// (1 - u)^alpha_order, u = depth / thickness.
 ///   Sources: J.-P. Berenger, J. Comput. Phys. 114, 185 (1994); S. D. Gedney, IEEE Trans. Antennas Propag.

@@ -31,7 +31,7 @@ inline Problem vacuum_problem(Index3 cells, Vec3 cell_m, double courant = 0.99) 
 
 /// Sets one face; `cells` of layer on that side.
 inline void set_face(Problem& problem, Side side, FaceKind kind, const LayerTable& layer = {}) {
-  problem.faces[static_cast<std::size_t>(index_of(side))] = {kind, layer};
+  problem.faces[static_cast<std::size_t>(index_of(side))] = {kind, layer, {}, 1};
   problem.lattice.shell_cells[static_cast<std::size_t>(index_of(side))] = layer.cells();
   problem.lattice.periodic[static_cast<std::size_t>(index_of(axis_of(side)))] = kind == FaceKind::periodic;
 }
