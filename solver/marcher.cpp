@@ -20,20 +20,48 @@ std::array<Stretch<Real>, 3> make_stretches(const Problem& problem, const RowLay
           make_stretch<Real>(problem, Axis::z, electric, static_cast<int>(layout.row))};
 }
 
-int cfs_cells(const Problem& problem, Side side) {
-  const Face& face = problem.face(side);
-  return face.kind == FaceKind::cfs_pml ? face.layer.cells() : 0;
-}
-
 int n_rows(const Lattice& lattice, Axis a) {
   return lattice.cells(a) + (lattice.periodic[static_cast<std::size_t>(index_of(a))] ? 0 : 1);
+}
+
+/// Rows along an axis in groups: the nodes of a Moebius layer together, all others alone.
+std::vector<int> group_rows(const Problem& problem, Axis axis) {
+  const int n = problem.lattice.cells(axis), rows = n_rows(problem.lattice, axis);
+  const auto cells = [&](bool high) {
+    const Face& face = problem.face(side_of(axis, high));
+    return face.kind == FaceKind::moebius ? face.cells() : 0;
+  };
+  const int lo_end = cells(false) + 1, hi_begin = n - cells(true);
+  std::vector<int> begin;
+  for (int index = 0; index < rows; ++index)
+    if (index < 2 || (index >= lo_end && index <= hi_begin) || index == n) begin.push_back(index);
+  begin.push_back(rows);
+  return begin;
+}
+
+std::vector<int> make_column_slots(const Problem& problem, Axis axis) {
+  const int n = problem.lattice.cells(axis);
+  std::vector<int> slots(static_cast<std::size_t>(n) + 1, -1);
+  int next = 0;
+  for (const bool high : {false, true}) {
+    const Face& face = problem.face(side_of(axis, high));
+    if (face.kind != FaceKind::moebius) continue;
+    const int cells = face.cells();
+    for (int d = 0; d < cells; ++d) slots[static_cast<std::size_t>(high ? n - cells + d : 1 + d)] = next++;
+  }
+  return slots;
+}
+
+const Problem& checked(const Problem& problem) {
+  check_moebius_faces(problem);
+  return problem;
 }
 
 }  // namespace
 
 template <class Real>
 Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
-    : problem_(problem),
+    : problem_(checked(problem)),
       layout_(make_row_layout(problem.lattice, sizeof(Real))),
       threads_(threads),
       kernels_(row_kernels<Real>(code)),
@@ -42,36 +70,44 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
       h_media_(problem, layout_, false, threads),
       e_stretch_(make_stretches<Real>(problem, layout_, true)),
       h_stretch_(make_stretches<Real>(problem, layout_, false)),
-      z_cells_lo_(cfs_cells(problem, Side::z_lo)),
-      z_cells_hi_(cfs_cells(problem, Side::z_hi)),
+      column_slot_{make_column_slots(problem, Axis::x), make_column_slots(problem, Axis::y)},
+      e_memory_(layout_, layer_sizes(problem, LayerPart::cfs_e, layout_, sizeof(Real))),
+      h_memory_(layout_, layer_sizes(problem, LayerPart::h, layout_, sizeof(Real))),
+      column_memory_(layout_, layer_sizes(problem, LayerPart::moebius_e, layout_, sizeof(Real))),
       dipoles_(problem, e_media_, h_media_),
-      rows_{n_rows(problem.lattice, Axis::x), n_rows(problem.lattice, Axis::y),
+      rows_{group_rows(problem, Axis::x), group_rows(problem, Axis::y),
             rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
-      slabs_(deal_planes(rows_.n_i, threads)) {
-  e_memory_ = std::make_unique<LayerMemory<Real>>(layout_, e_stretch_[0].n_slots, e_stretch_[1].n_slots,
-                                                  z_cells_lo_ + z_cells_hi_);
-  h_memory_ = std::make_unique<LayerMemory<Real>>(layout_, h_stretch_[0].n_slots, h_stretch_[1].n_slots,
-                                                  z_cells_lo_ + z_cells_hi_);
+      slabs_(deal_groups(rows_.i_begin, threads)) {
+  for (Side side : all_sides)
+    columns_[static_cast<std::size_t>(index_of(side))] = MoebiusColumns<Real>(problem_, side, layout_);
+  for (const std::size_t high : {0, 1}) {
+    const Side side = side_of(Axis::z, high != 0);
+    z_windows_[0][high] = z_window(problem_, side, true, layout_, sizeof(Real));
+    z_windows_[1][high] = z_window(problem_, side, false, layout_, sizeof(Real));
+  }
   if (problem_.plane_wave) surface_ = std::make_unique<TotalFieldSurface<Real>>(problem_, e_media_, h_media_);
 #pragma omp parallel num_threads(threads_)
   {
     // The thread that works on a plane is the first to touch it. Rows past the last moving one belong to the
     // last.
     const auto t = static_cast<std::size_t>(omp_get_thread_num());
-    const int lo = slabs_[t],
-              hi = t + 1 == static_cast<std::size_t>(threads_) ? layout_.nx + 1 : slabs_[t + 1];
+    const auto plane = [&](std::size_t slab) {
+      return rows_.i_begin[static_cast<std::size_t>(slabs_[slab])];
+    };
+    const int lo = plane(t), hi = t + 1 == static_cast<std::size_t>(threads_) ? layout_.nx + 1 : plane(t + 1);
     fields_.zero_planes(lo, hi);
-    e_memory_->zero_planes(lo, hi, e_stretch_[0].slot);
-    h_memory_->zero_planes(lo, hi, h_stretch_[0].slot);
+    e_memory_.zero_planes(lo, hi, e_stretch_[0].slot);
+    h_memory_.zero_planes(lo, hi, h_stretch_[0].slot);
+    column_memory_.zero_planes(lo, hi, column_slot_[0]);
   }
 }
 
 template <class Real>
 std::size_t Marcher<Real>::layer_bytes() const {
-  return LayerMemory<Real>::bytes(layout_, e_stretch_[0].n_slots, e_stretch_[1].n_slots,
-                                  z_cells_lo_ + z_cells_hi_) +
-         LayerMemory<Real>::bytes(layout_, h_stretch_[0].n_slots, h_stretch_[1].n_slots,
-                                  z_cells_lo_ + z_cells_hi_);
+  std::size_t sum = 0;
+  for (const LayerPart part : {LayerPart::cfs_e, LayerPart::h, LayerPart::moebius_e})
+    sum += LayerMemory<Real>::bytes(layout_, layer_sizes(problem_, part, layout_, sizeof(Real)));
+  return sum;
 }
 
 /// Tangential H on the far side of a magnetic wall: the mirror image with its sign turned.
@@ -108,16 +144,18 @@ RowTask<Real> Marcher<Real>::task(int i, int j, bool electric) {
   t.inv_y = stretch[1].inv[static_cast<std::size_t>(j)];
   t.inv_z = stretch[2].inv.data();
   t.ahead = layout_.row;
-  auto& memory = electric ? *e_memory_ : *h_memory_;
+  auto& memory = electric ? e_memory_ : h_memory_;
   if (const int slot = stretch[0].slot[static_cast<std::size_t>(i)]; slot >= 0) {
     t.x_b = stretch[0].b[static_cast<std::size_t>(i)];
     t.x_c = stretch[0].c[static_cast<std::size_t>(i)];
+    t.x_late = stretch[0].late[static_cast<std::size_t>(i)] != 0;
     t.x_psi_first = memory.x(slot, j, 0);
     t.x_psi_second = memory.x(slot, j, 1);
   }
   if (const int slot = stretch[1].slot[static_cast<std::size_t>(j)]; slot >= 0) {
     t.y_b = stretch[1].b[static_cast<std::size_t>(j)];
     t.y_c = stretch[1].c[static_cast<std::size_t>(j)];
+    t.y_late = stretch[1].late[static_cast<std::size_t>(j)] != 0;
     t.y_psi_first = memory.y(slot, i, 0);
     t.y_psi_second = memory.y(slot, i, 1);
   }
@@ -127,28 +165,43 @@ RowTask<Real> Marcher<Real>::task(int i, int j, bool electric) {
 template <class Real>
 void Marcher<Real>::add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j,
                                  bool electric) {
-  if (z_cells_lo_ + z_cells_hi_ == 0) return;
-  const Stretch<Real>& stretch = (electric ? e_stretch_ : h_stretch_)[2];
-  Real* psi = (electric ? e_memory_ : h_memory_)->z(i, j);
   const Real* gain = media.z_layer_gain.data();
-  const auto layer = [&](int begin, int n) {
-    if (n == 0) return;
-    ZLayerTask<Real> z;
-    z.begin = begin;
-    z.n = n;
-    z.b = stretch.b.data() + begin;
-    z.c = stretch.c.data() + begin;
-    z.gain_x = gain;
-    z.gain_y = gain + n;
-    z.ahead = 2 * (z_cells_lo_ + z_cells_hi_);
-    z.psi_x = psi;
-    z.psi_y = psi + n;
-    (electric ? kernels_.z_layer_e : kernels_.z_layer_h)(t, z);
+  if (media.z_layer_gain.empty()) return;
+  const Stretch<Real>& stretch = (electric ? e_stretch_ : h_stretch_)[2];
+  auto& memory = electric ? e_memory_ : h_memory_;
+  Real* psi = memory.z(i, j);
+  Real* column_memory = column_memory_.z(i, j);
+  for (const bool high : {false, true}) {
+    const Side side = side_of(Axis::z, high);
+    const ZWindow& window = z_windows_[electric ? 0 : 1][high ? 1 : 0];
+    const int n = window.length;
+    if (n == 0) continue;
+    if (electric && kind(side) == FaceKind::moebius) {
+      ZMoebiusTask<Real> z = columns(Axis::z, high).z_task();
+      z.gain_x = gain;
+      z.gain_y = gain + n;
+      z.memory = column_memory;
+      z.ahead = column_memory_.z_values();
+      kernels_.z_moebius_e(t, z);
+      column_memory += 4 * n;
+    } else {
+      ZLayerTask<Real> z;
+      z.begin = window.begin;
+      z.n = n;
+      z.b = stretch.b.data() + window.begin;
+      z.c = stretch.c.data() + window.begin;
+      z.gain_x = gain;
+      z.gain_y = gain + n;
+      z.ahead = memory.z_values();
+      z.psi_x = psi;
+      z.psi_y = psi + n;
+      (electric                          ? kernels_.z_layer_e
+       : kind(side) == FaceKind::moebius ? kernels_.z_layer_h_late
+                                         : kernels_.z_layer_h)(t, z);
+      psi += 2 * n;
+    }
     gain += 2 * n;
-    psi += 2 * n;
-  };
-  layer(electric ? 1 : 0, z_cells_lo_);
-  layer(layout_.nz - z_cells_hi_, z_cells_hi_);
+  }
 }
 
 /// At k = 0 and nz the kernel saw zero beyond the wall. Adds what a magnetic wall or the periodic image has
@@ -182,9 +235,81 @@ void Marcher<Real>::hold_z_walls(const RowTask<Real>& t) {
   }
 }
 
+/// One set of columns: across x at row j = across, or across y at plane i = across.
 template <class Real>
-void Marcher<Real>::advance_e(int i, int j) {
+void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* difference,
+                                  std::ptrdiff_t difference_step) {
+  const MoebiusColumns<Real>& layer = columns(axis, high);
+  const bool along_x = axis == Axis::x;
+  const int node = layer.first_node(), step = layer.step();
+  const std::ptrdiff_t stride = along_x ? layout_.plane : layout_.row;
+  const int slot = column_slot_[along_x ? 0 : 1][static_cast<std::size_t>(node)];
+  ColumnTask<Real> task;
+  task.cells = layer.cells();
+  task.row = layout_.row;
+  task.numbers = layer.numbers();
+  task.h_step = step * stride;
+  task.h_minus = stride;
+  task.memory_step = step * (along_x ? column_memory_.x_stride() : column_memory_.y_stride());
+  task.difference_step = step * difference_step;
+  for (int c = 0; c < 2; ++c) {
+    // E of the next axis changes with H of the one after, and the other way round.
+    const Axis h = c == 0 ? next(next(axis)) : next(axis);
+    task.h[c] = along_x ? fields_.row(magnetic(h), node, across) : fields_.row(magnetic(h), across, node);
+    task.memory[c] = along_x ? column_memory_.x(slot, across, 2 * c) : column_memory_.y(slot, across, 2 * c);
+    task.difference[c] = difference + (node - layer.nodes().begin) * difference_step + c * layout_.row;
+  }
+  kernels_.moebius_columns(task);
+}
+
+template <class Real>
+void Marcher<Real>::advance_e(const RowBlock& block) {
+  // A block of more than one plane or row is a layer's; one of a single node may be.
+  const auto in_layer = [&](Axis axis, int index) {
+    const std::size_t a = axis == Axis::x ? 0 : 1;
+    return column_slot_[a][static_cast<std::size_t>(index)] >= 0;
+  };
+  const bool x = in_layer(Axis::x, block.i0), y = in_layer(Axis::y, block.j0);
+  if (!x && !y) {
+    for (int j = block.j0; j < block.j1; ++j)
+      for (int i = block.i0; i < block.i1; ++i) advance_e_row(i, j, {}, layout_.row);
+    return;
+  }
+  const std::ptrdiff_t pair = 2 * layout_.row;
+  const int n_i = block.i1 - block.i0, n_j = block.j1 - block.j0;
+  thread_local AlignedArray<Real> scratch;  // x pairs of one j, then y pairs of all i and j
+  const auto needed = static_cast<std::size_t>(pair * (n_i + n_i * n_j));
+  if (scratch.size() < needed) scratch = AlignedArray<Real>(needed);
+  Real* const x_pairs = scratch.data();
+  Real* const y_pairs = x_pairs + n_i * pair;
+  const auto is_high = [&](Axis axis, int index) {
+    return columns(axis, true).cells() > 0 && index >= columns(axis, true).nodes().begin;
+  };
+  if (y)
+    for (int i = block.i0; i < block.i1; ++i)
+      solve_columns(Axis::y, is_high(Axis::y, block.j0), i, y_pairs + (i - block.i0) * n_j * pair, pair);
+  for (int j = block.j0; j < block.j1; ++j) {
+    if (x) solve_columns(Axis::x, is_high(Axis::x, block.i0), j, x_pairs, pair);
+    for (int i = block.i0; i < block.i1; ++i)
+      advance_e_row(i, j,
+                    {x ? x_pairs + (i - block.i0) * pair : nullptr,
+                     y ? y_pairs + ((i - block.i0) * n_j + (j - block.j0)) * pair : nullptr},
+                    n_i > 1 ? layout_.plane : layout_.row);
+  }
+}
+
+template <class Real>
+void Marcher<Real>::advance_e_row(int i, int j, const Given& given, std::ptrdiff_t ahead) {
   RowTask<Real> t = task(i, j, true);
+  t.ahead = ahead;
+  if (given.x) {
+    t.x_given_first = given.x;
+    t.x_given_second = given.x + layout_.row;
+  }
+  if (given.y) {
+    t.y_given_first = given.y;
+    t.y_given_second = given.y + layout_.row;
+  }
   thread_local AlignedArray<Real> scratch;  // mirrored rows: Hy, Hz beyond an x wall, Hx, Hz beyond a y wall
   const auto mirror = [&](const Real** beside, std::size_t component, std::size_t slot) {
     const auto row = static_cast<std::size_t>(layout_.row);

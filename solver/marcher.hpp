@@ -12,6 +12,7 @@
 #include "solver/recorders/recorder.hpp"
 #include "solver/row_kernels.hpp"
 #include "solver/schedule.hpp"
+#include "solver/shell/moebius.hpp"
 #include "solver/shell/stretch.hpp"
 
 namespace wanewall {
@@ -43,7 +44,7 @@ class Marcher : public RowWork {
   /// First component and cell that is not finite, as text; empty when all are.
   std::string find_not_finite() const;
 
-  void advance_e(int i, int j) override;
+  void advance_e(const RowBlock& block) override;
   void advance_h(int i, int j) override;
 
   /// Bytes held, by kind.
@@ -52,6 +53,17 @@ class Marcher : public RowWork {
   std::size_t media_bytes() const { return e_media_.bytes() + h_media_.bytes(); }
 
  private:
+  /// H differences of one row through the Moebius layers, first and second component of each axis; null
+  /// outside them.
+  struct Given {
+    const Real* x = nullptr;
+    const Real* y = nullptr;
+  };
+  void advance_e_row(int i, int j, const Given& given, std::ptrdiff_t ahead);
+  void solve_columns(Axis axis, bool high, int across, Real* difference, std::ptrdiff_t difference_step);
+  const MoebiusColumns<Real>& columns(Axis axis, bool high) const {
+    return columns_[static_cast<std::size_t>(index_of(side_of(axis, high)))];
+  }
   RowTask<Real> task(int i, int j, bool electric);
   void add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j, bool electric);
   void add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media);
@@ -66,13 +78,15 @@ class Marcher : public RowWork {
   Fields<Real> fields_;
   MediaRows<Real> e_media_, h_media_;
   std::array<Stretch<Real>, 3> e_stretch_, h_stretch_;
-  int z_cells_lo_ = 0, z_cells_hi_ = 0;
-  std::unique_ptr<LayerMemory<Real>> e_memory_, h_memory_;
+  std::array<MoebiusColumns<Real>, 6> columns_;        // by Side
+  std::array<std::vector<int>, 2> column_slot_;        // of nodes in Moebius layers along x and y, else -1
+  std::array<std::array<ZWindow, 2>, 2> z_windows_{};  // [E, H][low, high]
+  LayerMemory<Real> e_memory_, h_memory_, column_memory_;
   std::unique_ptr<TotalFieldSurface<Real>> surface_;
   DipoleRows<Real> dipoles_;
   bool surface_is_active_ = false;
   const Captures<Real>* captures_ = nullptr;
-  RowExtent rows_;
+  RowGroups rows_;
   std::vector<int> slabs_;
   long step_ = 0;
 };

@@ -9,6 +9,7 @@
 
 #include "geometry/constants.hpp"
 #include "geometry/painter.hpp"
+#include "solver/shell/moebius.hpp"
 
 namespace wanewall {
 namespace {
@@ -179,8 +180,8 @@ MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool
       rows_(static_cast<std::size_t>(layout.nx + 1) * static_cast<std::size_t>(layout.ny + 1)),
       pools_(static_cast<std::size_t>(threads)) {
   const RowPainter painter(problem, electric);
-  const int n_lo = problem.face(Side::z_lo).kind == FaceKind::cfs_pml ? problem.lattice.shell(Side::z_lo) : 0;
-  const int n_hi = problem.face(Side::z_hi).kind == FaceKind::cfs_pml ? problem.lattice.shell(Side::z_hi) : 0;
+  const ZWindow windows[2]{z_window(problem, Side::z_lo, electric, layout, sizeof(Real)),
+                           z_window(problem, Side::z_hi, electric, layout, sizeof(Real))};
 #pragma omp parallel num_threads(threads)
   {
     auto& pool = pools_[static_cast<std::size_t>(omp_get_thread_num())];
@@ -213,14 +214,13 @@ MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool
         if (!slot) {
           pool.push_back(compress(values));
           RowMedia<Real>& media = pool.back();
-          const auto gains = [&](int begin, int n) {
-            for (std::size_t c = 0; c < 2; ++c) {
-              for (int k = begin; k < begin + n; ++k)
-                media.z_layer_gain.push_back(values[c][static_cast<std::size_t>(k)].gain);
-            }
-          };
-          gains(electric ? 1 : 0, n_lo);
-          gains(layout.nz - n_hi, n_hi);
+          for (const ZWindow& window : windows)
+            for (std::size_t c = 0; c < 2; ++c)
+              for (int m = 0; m < window.length; ++m) {
+                const bool in_layer = m >= window.first && m < window.last;
+                const auto k = static_cast<std::size_t>(window.begin + m);
+                media.z_layer_gain.push_back(in_layer ? values[c][k].gain : Real(0));
+              }
           slot = &media;
         }
         rows_[static_cast<std::size_t>(i) * static_cast<std::size_t>(ny_ + 1) + static_cast<std::size_t>(j)] =

@@ -32,7 +32,7 @@ template <class Real>
 struct RowMedia {
   std::vector<MediaSpan<Real>> spans;
   AlignedArray<Real> mixed;
-  std::vector<Real> z_layer_gain;  ///< [low x][low y][high x][high y], each as long as that layer
+  std::vector<Real> z_layer_gain;  ///< [low x][low y][high x][high y], each as long as that layer's window
   UpdateCoefficients at(int component, int k) const;
 };
 

@@ -6,6 +6,8 @@
 #include <cstddef>
 #include <string_view>
 
+#include "solver/layer_tasks.hpp"
+
 namespace wanewall {
 
 /// Consecutive k of a row, a whole number of cache lines. A uniform span has two numbers per component, a
@@ -45,32 +47,28 @@ struct RowTask {
   Real y_b = 0, y_c = 0;
   Real* y_psi_first = nullptr;   ///< z component
   Real* y_psi_second = nullptr;  ///< x component
-};
-
-/// The part of a row inside one z layer: n consecutive k from `begin`.
-template <class Real>
-struct ZLayerTask {
-  int begin = 0;
-  int n = 0;
-  const Real* b = nullptr;       ///< [n]
-  const Real* c = nullptr;       ///< [n], 1/m
-  const Real* gain_x = nullptr;  ///< [n] gain of the x component
-  const Real* gain_y = nullptr;
-  std::ptrdiff_t ahead = 0;  ///< from this row's psi to the next row's; only a hint
-  Real* psi_x = nullptr;     ///< [n]
-  Real* psi_y = nullptr;
+  /// H in a Moebius layer: psi acts before it takes in the new difference.
+  bool x_late = false, y_late = false;
+  /// E in a Moebius layer: the H differences along the axis, already solved for (ColumnTask); null elsewhere.
+  const Real* x_given_first = nullptr;
+  const Real* x_given_second = nullptr;
+  const Real* y_given_first = nullptr;
+  const Real* y_given_second = nullptr;
 };
 
 /// Ampere's law on one row,     E(n)   = decay E(n-1)   + gain curl H(n-1/2)
 /// Faraday's law on one row,    H(n+1/2) = decay H(n-1/2) - gain curl E(n)
-/// with differences along x and y stretched by their layers. The z layers' memory terms are added by the
-/// second pair.
+/// with differences along x and y stretched by their layers. What the z layers add is added by the others
+/// (layer_tasks.hpp); moebius_columns runs before the rows it serves.
 template <class Real>
 struct RowKernels {
   void (*advance_e)(const RowTask<Real>&);
   void (*advance_h)(const RowTask<Real>&);
   void (*z_layer_e)(const RowTask<Real>&, const ZLayerTask<Real>&);
   void (*z_layer_h)(const RowTask<Real>&, const ZLayerTask<Real>&);
+  void (*z_layer_h_late)(const RowTask<Real>&, const ZLayerTask<Real>&);
+  void (*moebius_columns)(const ColumnTask<Real>&);
+  void (*z_moebius_e)(const RowTask<Real>&, const ZMoebiusTask<Real>&);
   std::string_view name;
 };
 

@@ -15,18 +15,27 @@ struct Vector {
   static void store(Real* p, Aligned v) { *reinterpret_cast<Aligned*>(p) = v; }
 };
 
-/// psi and the stretched difference of one component along one axis.
-template <class Real, bool layer>
+/// What a layer does to the differences along one axis: nothing; cfs_pml memory; for E the differences are
+/// given, already through the Moebius layer; for H Moebius memory, which acts before it takes in the new
+/// difference.
+enum class Along { plain, cfs, given, late };
+
+/// The stretched difference of one component along one axis, at k.
+template <class Real, Along along>
 inline typename Vector<Real>::Aligned stretched(typename Vector<Real>::Aligned difference, Real inv, Real b,
-                                                Real c, Real* psi, std::ptrdiff_t psi_ahead) {
+                                                Real c, Real* psi, const Real* given, int k,
+                                                std::ptrdiff_t psi_ahead) {
   using V = Vector<Real>;
-  if constexpr (layer) {
-    __builtin_prefetch(psi + psi_ahead, 1);
-    const auto memory = b * V::load(psi) + c * difference;
-    V::store(psi, memory);
-    return inv * difference + memory;
-  } else {
+  if constexpr (along == Along::given) {
+    return inv * V::load(given + k);
+  } else if constexpr (along == Along::plain) {
     return inv * difference;
+  } else {
+    __builtin_prefetch(psi + k + psi_ahead, 1);
+    const auto old = V::load(psi + k);
+    const auto memory = b * old + c * difference;
+    V::store(psi + k, memory);
+    return inv * difference + (along == Along::late ? old : memory);
   }
 }
 
@@ -43,7 +52,7 @@ inline void move(Real* own, int k, int in_span, int length, const MediaSpan<Real
   }
 }
 
-template <class Real, bool layer_x, bool layer_y, bool mixed>
+template <class Real, Along along_x, Along along_y, bool mixed>
 void span_e(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   using V = Vector<Real>;
   constexpr int line = 64 / static_cast<int>(sizeof(Real));
@@ -61,14 +70,14 @@ void span_e(const RowTask<Real>& t, const MediaSpan<Real>& span) {
     }
     const auto hx = V::load(hx_row + k), hy = V::load(hy_row + k), hz = V::load(hz_row + k);
     const auto inv_z = V::load(t.inv_z + k);
-    const auto dy_hz = stretched<Real, layer_y>(hz - V::load(hz_jm + k), t.inv_y, t.y_b, t.y_c,
-                                                t.y_psi_second + k, 2 * t.ahead);
-    const auto dy_hx = stretched<Real, layer_y>(hx - V::load(hx_jm + k), t.inv_y, t.y_b, t.y_c,
-                                                t.y_psi_first + k, 2 * t.ahead);
-    const auto dx_hy = stretched<Real, layer_x>(hy - V::load(hy_im + k), t.inv_x, t.x_b, t.x_c,
-                                                t.x_psi_second + k, 2 * t.ahead);
-    const auto dx_hz = stretched<Real, layer_x>(hz - V::load(hz_im + k), t.inv_x, t.x_b, t.x_c,
-                                                t.x_psi_first + k, 2 * t.ahead);
+    const auto dy_hz = stretched<Real, along_y>(hz - V::load(hz_jm + k), t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_second, t.y_given_second, k, 2 * t.ahead);
+    const auto dy_hx = stretched<Real, along_y>(hx - V::load(hx_jm + k), t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_first, t.y_given_first, k, 2 * t.ahead);
+    const auto dx_hy = stretched<Real, along_x>(hy - V::load(hy_im + k), t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_second, t.x_given_second, k, 2 * t.ahead);
+    const auto dx_hz = stretched<Real, along_x>(hz - V::load(hz_im + k), t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_first, t.x_given_first, k, 2 * t.ahead);
     const auto dz_hy = inv_z * (hy - V::load_any(hy_row + k - 1));
     const auto dz_hx = inv_z * (hx - V::load_any(hx_row + k - 1));
     const int s = k - span.begin;
@@ -78,7 +87,7 @@ void span_e(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   }
 }
 
-template <class Real, bool layer_x, bool layer_y, bool mixed>
+template <class Real, Along along_x, Along along_y, bool mixed>
 void span_h(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   using V = Vector<Real>;
   const int length = span.end - span.begin;
@@ -87,14 +96,14 @@ void span_h(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   for (int k = span.begin; k < span.end; k += V::width) {
     const auto ex = V::load(ex_row + k), ey = V::load(ey_row + k), ez = V::load(ez_row + k);
     const auto inv_z = V::load(t.inv_z + k);
-    const auto dy_ez = stretched<Real, layer_y>(V::load(ez_jp + k) - ez, t.inv_y, t.y_b, t.y_c,
-                                                t.y_psi_second + k, 2 * t.ahead);
-    const auto dy_ex = stretched<Real, layer_y>(V::load(ex_jp + k) - ex, t.inv_y, t.y_b, t.y_c,
-                                                t.y_psi_first + k, 2 * t.ahead);
-    const auto dx_ey = stretched<Real, layer_x>(V::load(ey_ip + k) - ey, t.inv_x, t.x_b, t.x_c,
-                                                t.x_psi_second + k, 2 * t.ahead);
-    const auto dx_ez = stretched<Real, layer_x>(V::load(ez_ip + k) - ez, t.inv_x, t.x_b, t.x_c,
-                                                t.x_psi_first + k, 2 * t.ahead);
+    const auto dy_ez = stretched<Real, along_y>(V::load(ez_jp + k) - ez, t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_second, t.y_given_second, k, 2 * t.ahead);
+    const auto dy_ex = stretched<Real, along_y>(V::load(ex_jp + k) - ex, t.inv_y, t.y_b, t.y_c,
+                                                t.y_psi_first, t.y_given_first, k, 2 * t.ahead);
+    const auto dx_ey = stretched<Real, along_x>(V::load(ey_ip + k) - ey, t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_second, t.x_given_second, k, 2 * t.ahead);
+    const auto dx_ez = stretched<Real, along_x>(V::load(ez_ip + k) - ez, t.inv_x, t.x_b, t.x_c,
+                                                t.x_psi_first, t.x_given_first, k, 2 * t.ahead);
     const auto dz_ey = inv_z * (V::load_any(ey_row + k + 1) - ey);
     const auto dz_ex = inv_z * (V::load_any(ex_row + k + 1) - ex);
     const int s = k - span.begin;
@@ -104,79 +113,60 @@ void span_h(const RowTask<Real>& t, const MediaSpan<Real>& span) {
   }
 }
 
-template <class Real, bool layer_x, bool layer_y>
+template <class Real, Along along_x, Along along_y>
 void row_e(const RowTask<Real>& t) {
   for (int n = 0; n < t.n_spans; ++n) {
     if (t.spans[n].mixed)
-      span_e<Real, layer_x, layer_y, true>(t, t.spans[n]);
+      span_e<Real, along_x, along_y, true>(t, t.spans[n]);
     else
-      span_e<Real, layer_x, layer_y, false>(t, t.spans[n]);
+      span_e<Real, along_x, along_y, false>(t, t.spans[n]);
   }
 }
 
-template <class Real, bool layer_x, bool layer_y>
+template <class Real, Along along_x, Along along_y>
 void row_h(const RowTask<Real>& t) {
   for (int n = 0; n < t.n_spans; ++n) {
     if (t.spans[n].mixed)
-      span_h<Real, layer_x, layer_y, true>(t, t.spans[n]);
+      span_h<Real, along_x, along_y, true>(t, t.spans[n]);
     else
-      span_h<Real, layer_x, layer_y, false>(t, t.spans[n]);
+      span_h<Real, along_x, along_y, false>(t, t.spans[n]);
   }
+}
+
+template <class Real, Along along_x>
+void choose_row_e(const RowTask<Real>& t) {
+  t.y_given_first  ? row_e<Real, along_x, Along::given>(t)
+  : t.y_psi_first ? row_e<Real, along_x, Along::cfs>(t)
+                  : row_e<Real, along_x, Along::plain>(t);
 }
 
 template <class Real>
 void advance_e(const RowTask<Real>& t) {
-  const bool x = t.x_psi_first != nullptr, y = t.y_psi_first != nullptr;
-  x ? (y ? row_e<Real, true, true>(t) : row_e<Real, true, false>(t))
-    : (y ? row_e<Real, false, true>(t) : row_e<Real, false, false>(t));
+  t.x_given_first  ? choose_row_e<Real, Along::given>(t)
+  : t.x_psi_first ? choose_row_e<Real, Along::cfs>(t)
+                  : choose_row_e<Real, Along::plain>(t);
+}
+
+template <class Real, Along along_x>
+void choose_row_h(const RowTask<Real>& t) {
+  !t.y_psi_first ? row_h<Real, along_x, Along::plain>(t)
+  : t.y_late     ? row_h<Real, along_x, Along::late>(t)
+                 : row_h<Real, along_x, Along::cfs>(t);
 }
 
 template <class Real>
 void advance_h(const RowTask<Real>& t) {
-  const bool x = t.x_psi_first != nullptr, y = t.y_psi_first != nullptr;
-  x ? (y ? row_h<Real, true, true>(t) : row_h<Real, true, false>(t))
-    : (y ? row_h<Real, false, true>(t) : row_h<Real, false, false>(t));
+  !t.x_psi_first ? choose_row_h<Real, Along::plain>(t)
+  : t.x_late     ? choose_row_h<Real, Along::late>(t)
+                 : choose_row_h<Real, Along::cfs>(t);
 }
 
-/// Ex gains -psi of dHy/dz, Ey gains +psi of dHx/dz.
-template <class Real>
-void z_layer_e(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
-  const Real* __restrict hx = t.other[0] + z.begin, * __restrict hy = t.other[1] + z.begin;
-  Real* __restrict ex = t.own[0] + z.begin, * __restrict ey = t.own[1] + z.begin;
-  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
-  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
-#pragma omp simd
-  for (int m = 0; m < z.n; ++m) {
-    const Real memory_x = b[m] * psi_x[m] + c[m] * (hy[m] - hy[m - 1]);
-    const Real memory_y = b[m] * psi_y[m] + c[m] * (hx[m] - hx[m - 1]);
-    psi_x[m] = memory_x;
-    psi_y[m] = memory_y;
-    ex[m] -= gain_x[m] * memory_x;
-    ey[m] += gain_y[m] * memory_y;
-  }
-}
-
-/// Hx gains +psi of dEy/dz, Hy gains -psi of dEx/dz.
-template <class Real>
-void z_layer_h(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
-  const Real* __restrict ex = t.other[0] + z.begin, * __restrict ey = t.other[1] + z.begin;
-  Real* __restrict hx = t.own[0] + z.begin, * __restrict hy = t.own[1] + z.begin;
-  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
-  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
-#pragma omp simd
-  for (int m = 0; m < z.n; ++m) {
-    const Real memory_x = b[m] * psi_x[m] + c[m] * (ey[m + 1] - ey[m]);
-    const Real memory_y = b[m] * psi_y[m] + c[m] * (ex[m + 1] - ex[m]);
-    psi_x[m] = memory_x;
-    psi_y[m] = memory_y;
-    hx[m] += gain_x[m] * memory_x;
-    hy[m] -= gain_y[m] * memory_y;
-  }
-}
+#include "solver/layer_kernels.inl"
 
 template <class Real>
 RowKernels<Real> make_kernels(std::string_view name) {
-  return {advance_e<Real>, advance_h<Real>, z_layer_e<Real>, z_layer_h<Real>, name};
+  return {advance_e<Real>,        advance_h<Real>,       z_layer_e<Real>,   z_layer_h<Real, false>,
+          z_layer_h<Real, true>,  moebius_columns<Real>, z_moebius_e<Real>, name};
 }
 
 }  // namespace WANEWALL_VECTOR_NAMESPACE

@@ -119,17 +119,9 @@ Footprint footprint_as(const Problem& problem) {
   const RowLayout layout = make_row_layout(problem.lattice, sizeof(Real));
   Footprint footprint;
   footprint.fields = static_cast<double>(Fields<Real>::bytes(layout));
-  int slots[2]{}, z_cells = 0;
-  for (Side side : all_sides) {
-    const Face& face = problem.face(side);
-    if (face.kind != FaceKind::cfs_pml) continue;
-    if (axis_of(side) == Axis::z)
-      z_cells += face.layer.cells();
-    else
-      slots[index_of(axis_of(side))] += face.layer.cells();
-  }
-  footprint.layer_memory =
-      2.0 * static_cast<double>(LayerMemory<Real>::bytes(layout, slots[0], slots[1], z_cells));
+  for (const LayerPart part : {LayerPart::cfs_e, LayerPart::h, LayerPart::moebius_e})
+    footprint.layer_memory += static_cast<double>(
+        LayerMemory<Real>::bytes(layout, layer_sizes(problem, part, layout, sizeof(Real))));
   for (const bool electric : {true, false})
     footprint.media += static_cast<double>(MediaRows<Real>(problem, layout, electric, threads).bytes());
   footprint.audit = AuditRecorder<Real>::bytes(problem);

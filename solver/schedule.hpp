@@ -13,30 +13,40 @@
 
 namespace wanewall {
 
-/// The work of one row. Called from many threads, for different rows at once.
+/// Rows i0 <= i < i1, j0 <= j < j1.
+struct RowBlock {
+  int i0 = 0, i1 = 0, j0 = 0, j1 = 0;
+};
+
+/// The work of rows. Called from many threads, for different rows at once.
 class RowWork {
  public:
   virtual ~RowWork() = default;
-  virtual void advance_e(int i, int j) = 0;
+  /// A block is one group along x times one along y.
+  virtual void advance_e(const RowBlock& block) = 0;
   virtual void advance_h(int i, int j) = 0;
 };
 
-/// Rows that exist: i < n_i, j < n_j, for E and H alike.
-struct RowExtent {
-  int n_i = 0;
-  int n_j = 0;
-  int band = 4096;  ///< rows that the fused sweep takes at a time, see rows_per_band
+/// Rows that exist, for E and H alike, in groups whose E must be advanced together: the nodes of a Moebius
+/// layer along its normal. All others are groups of one. Group a along x is i_begin[a] <= i < i_begin[a + 1].
+struct RowGroups {
+  std::vector<int> i_begin{0}, j_begin{0};
+  int band = 4096;  ///< groups along y that the fused sweep takes at a time, see rows_per_band
+
+  int n_i() const { return static_cast<int>(i_begin.size()) - 1; }
+  int n_j() const { return static_cast<int>(j_begin.size()) - 1; }
 };
 
 /// Rows of which two planes, all six fields, fill half of a second-level cache of 1 MiB.
 int rows_per_band(std::size_t row_bytes);
 
-/// Planes i dealt to threads as slabs of nearly equal size; slab t is [begin[t], begin[t + 1]).
-std::vector<int> deal_planes(int n_i, int threads);
+/// Groups along x dealt to threads as slabs of nearly equal numbers of planes; slab t is the groups
+/// [begin[t], begin[t + 1]).
+std::vector<int> deal_groups(const std::vector<int>& i_begin, int threads);
 
 /// Advances all rows by one step. Must be called by every thread of a parallel region (thread number and
-/// slabs as in deal_planes); returns when all rows of all threads are done.
-void sweep(Schedule schedule, const RowExtent& rows, const std::vector<int>& slabs, int thread,
+/// slabs as in deal_groups); returns when all rows of all threads are done.
+void sweep(Schedule schedule, const RowGroups& rows, const std::vector<int>& slabs, int thread,
            RowWork& work);
 
 }  // namespace wanewall

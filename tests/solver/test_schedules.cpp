@@ -17,8 +17,24 @@ LayerTable layer(int cells) {
   return polynomial_layer(grading, cells);
 }
 
+MoebiusTable moebius_layer(int cells) {
+  MoebiusTable table;
+  for (int j = 0; j < cells; ++j) {
+    table.kappa.push_back(0.3 + 0.4 * j);
+    table.sigma_s_per_m.push_back(j == 2 ? 0.0 : 5.0 + 4.0 * j);
+    table.alpha_s_per_m.push_back(0.02 + 0.1 * j);
+  }
+  return table;
+}
+
+void set_moebius(Problem& p, Side side, int cells) {
+  set_face(p, side, FaceKind::moebius);
+  p.faces[static_cast<std::size_t>(index_of(side))].moebius = moebius_layer(cells);
+  p.lattice.shell_cells[static_cast<std::size_t>(index_of(side))] = cells;
+}
+
 /// Which faces a scene has; plane waves need sides that let them.
-enum class Kind { all_absorbing, mixed_walls, periodic_x, periodic_y, periodic_z };
+enum class Kind { all_absorbing, mixed_walls, moebius, moebius_mixed, periodic_x, periodic_y, periodic_z };
 
 Problem busy_problem(Kind kind, Precision precision) {
   Problem p = vacuum_problem({37, 29, 45}, {1e-3, 1e-3, 1.2e-3});
@@ -32,6 +48,18 @@ Problem busy_problem(Kind kind, Precision precision) {
     set_face(p, Side::y_lo, FaceKind::matched_slab, layer(5));
     set_face(p, Side::z_hi, FaceKind::matched_slab, layer(7));
   }
+  if (kind == Kind::moebius)
+    for (Side s : all_sides) set_moebius(p, s, 4 + index_of(s));
+  if (kind == Kind::moebius_mixed) {
+    // Beside ordinary layers, on one side only, one cell thin, and beside walls.
+    set_moebius(p, Side::x_hi, 5);
+    set_moebius(p, Side::y_lo, 1);
+    set_face(p, Side::y_hi, FaceKind::magnetic_wall);
+    set_moebius(p, Side::z_lo, 7);
+    set_face(p, Side::z_hi, FaceKind::electric_wall);
+  }
+  if (kind == Kind::periodic_x) set_moebius(p, Side::z_hi, 6);
+  if (kind == Kind::periodic_z) set_moebius(p, Side::x_lo, 3);
   if (kind == Kind::periodic_x) set_periodic(p, Axis::x);
   if (kind == Kind::periodic_y) set_periodic(p, Axis::y);
   if (kind == Kind::periodic_z) set_periodic(p, Axis::z);
@@ -48,7 +76,7 @@ Problem busy_problem(Kind kind, Precision precision) {
   pulse.delay_s = 70e-12;
   p.dipoles.push_back({false, {12.3e-3, 12.1e-3, 26e-3}, {1e-3, 2e-3, -1e-3}, pulse});
   p.dipoles.push_back({true, {24.3e-3, 18.1e-3, 22e-3}, {0.2, -0.1, 0.3}, pulse});
-  if (kind == Kind::all_absorbing) {
+  if (kind == Kind::all_absorbing || kind == Kind::moebius) {
     PlaneWave wave;
     wave.theta_rad = degrees(40.0);
     wave.phi_rad = degrees(25.0);
@@ -131,8 +159,8 @@ void check_same(const Everything& a, const Everything& b) {
 }  // namespace
 
 TEST_CASE("Fields and recordings do not depend on threads or schedule", "[schedule][exact]") {
-  const auto kind =
-      GENERATE(Kind::all_absorbing, Kind::mixed_walls, Kind::periodic_x, Kind::periodic_y, Kind::periodic_z);
+  const auto kind = GENERATE(Kind::all_absorbing, Kind::mixed_walls, Kind::moebius, Kind::moebius_mixed,
+                             Kind::periodic_x, Kind::periodic_y, Kind::periodic_z);
   const auto precision = GENERATE(Precision::single_precision, Precision::double_precision);
   const Problem p = busy_problem(kind, precision);
   const Everything reference = run_all(p, 1, Schedule::plain);
@@ -145,7 +173,7 @@ TEST_CASE("Fields and recordings do not depend on threads or schedule", "[schedu
 }
 
 TEST_CASE("All vector codes of this processor give the same bits", "[schedule][exact]") {
-  const Problem p = busy_problem(Kind::all_absorbing, Precision::single_precision);
+  const Problem p = busy_problem(GENERATE(Kind::all_absorbing, Kind::moebius), Precision::single_precision);
   std::vector<std::vector<float>> fields;
   for (int code = 0; code <= static_cast<int>(best_vector_code()); ++code) {
     Marcher<float> marcher(p, 2, static_cast<VectorCode>(code));
