@@ -23,14 +23,9 @@
 #include "postproc/lattice_wave.hpp"
 #include "postproc/wave_basis.hpp"
 #include "solver/results.hpp"
+#include "solver/shell/polarisation.hpp"
 
 namespace wanewall {
-
-enum class Polarisation { te, tm };
-inline constexpr std::array<Polarisation, 2> both_polarisations{Polarisation::te, Polarisation::tm};
-constexpr std::size_t index_of(Polarisation p) {
-  return static_cast<std::size_t>(p);
-}
 
 /// Powers of the plane waves in one bin [W s^2].
 struct SplitPower {

@@ -1,0 +1,53 @@
+// Tables of absorbing layers, searched for from a few numbers of the scene.
+//
+// What is minimised is  F_Q = (1/Q) ln mean_i (w_i |R_i|)^Q  over the points of design_points.hpp, with
+// closed- form gradients, Q falling step by step, from several starts of a generator of its own. Starts run
+// side by side; the result does not depend on the number of threads.
+#pragma once
+
+#include <vector>
+
+#include "solver/shell/design_points.hpp"
+#include "solver/shell/layer_table.hpp"
+
+namespace wanewall {
+
+/// Most cells a layer can be designed with.
+inline constexpr int most_designed_cells = 24;
+
+/// How well a table does on its points [dB]: the mean of w |R|, which is what a reflected near field collects
+/// relative to the wave that goes out, and the largest w |R|. In closed boxes with pulses the worst error in
+/// time, over the peak of the field there, has been within about 10 dB of the mean, mostly below it.
+struct DesignFigures {
+  double mean_db = 0.0;
+  double worst_db = 0.0;
+};
+
+template <class Table>
+struct Designed {
+  Table table;
+  DesignFigures figures;
+};
+
+/// Cells of `spacing_m` along the normal. 1 <= cells <= most_designed_cells, else std::invalid_argument.
+Designed<MoebiusTable> design_moebius(const DesignInputs& inputs, int cells, double spacing_m);
+/// sigma, kappa >= 1 and alpha free at every E node and half node.
+Designed<LayerTable> design_cfs_pml(const DesignInputs& inputs, int cells, double spacing_m);
+
+/// For plane waves from 0 to an angle only, at wavelengths of `shortest_cells` to `longest_cells` cells: the
+/// smallest worst reflection, with alpha = 0. Such a table reflects waves that decay towards the face almost
+/// totally: sources and objects must be far from it.
+struct PlaneWaveRange {
+  double courant = 0.99 / 1.7320508075688772;  ///< S = c0 dt/d
+  double shortest_cells = 10.0;
+  double longest_cells = 100.0;
+  double largest_angle_rad = 1.0;  ///< below pi/2
+};
+Designed<MoebiusTable> design_moebius(const PlaneWaveRange& range, int cells, double spacing_m);
+Designed<LayerTable> design_cfs_pml(const PlaneWaveRange& range, int cells, double spacing_m);
+
+/// The same measure for any table, searched or not.
+DesignFigures figures_of(const MoebiusTable& table, const DesignInputs& inputs, double spacing_m);
+DesignFigures figures_of(const LayerTable& table, const DesignInputs& inputs, double spacing_m);
+
+}  // namespace wanewall
