@@ -28,10 +28,10 @@ struct Leg {
 /// from giving up single points. The many unknowns of a graded layer need many steps, so only the promising
 /// starts get them.
 constexpr Leg moebius_near_field[]{{6.0, 1000, 12}, {2.0, 1000, 12}, {1.0, 2000, 1}};
-constexpr Leg graded_near_field[]{{6.0, 100, 4}, {6.0, 900, 4}, {2.0, 1000, 4}, {1.0, 2000, 1}};
+constexpr Leg graded_near_field[]{{6.0, 150, 6}, {2.0, 600, 3}, {1.0, 1500, 1}};
 /// Towards the worst point.
 constexpr Leg moebius_plane_waves[]{{6.0, 500, 12}, {25.0, 500, 12}, {100.0, 700, 12}, {400.0, 1000, 1}};
-constexpr Leg graded_plane_waves[]{{6.0, 100, 4}, {25.0, 500, 4}, {100.0, 700, 4}, {400.0, 1000, 1}};
+constexpr Leg graded_plane_waves[]{{6.0, 150, 6}, {25.0, 500, 4}, {100.0, 700, 3}, {400.0, 1500, 1}};
 
 constexpr int starts = 12;
 

@@ -11,6 +11,8 @@ using Vector = Eigen::VectorXd;
 
 constexpr double armijo = 1e-4, curvature = 0.9;
 constexpr int most_trials = 25;
+/// One short step says little: so many in a row end the search.
+constexpr int most_idle_steps = 5;
 /// Longest first step, in units of x: far from the minimum the model of the function is not to be trusted.
 constexpr double longest_step = 1.0, longest_first_step = 0.1;
 
@@ -24,6 +26,7 @@ double minimise(const SmoothFunction& f, std::vector<double>& x_out, int most_st
   Vector gradient = new_gradient;
   Eigen::MatrixXd inverse = Eigen::MatrixXd::Identity(n, n);  // of the second derivatives
   bool fresh = true;
+  int idle = 0;
   const auto restart = [&] {
     inverse.setIdentity();
     fresh = true;
@@ -71,7 +74,8 @@ double minimise(const SmoothFunction& f, std::vector<double>& x_out, int most_st
           scale * moved * moved.transpose() - (image * moved.transpose() + moved * image.transpose()) / along;
       fresh = false;
     }
-    if (gain < least_gain) break;
+    idle = gain < least_gain ? idle + 1 : 0;
+    if (idle == most_idle_steps) break;
   }
   return value;
 }

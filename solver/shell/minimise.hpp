@@ -10,9 +10,9 @@ namespace wanewall {
 /// Value at x; fills the gradient, which has the size of x.
 using SmoothFunction = std::function<double(const std::vector<double>& x, std::vector<double>& gradient)>;
 
-/// Moves x downhill by the BFGS method with a line search for the weak Wolfe conditions, until a step gains
-/// less than `least_gain` or `most_steps` are done; returns the value there. Finds a local minimum. The same
-/// input gives the same bits.
+/// Moves x downhill by the BFGS method with a line search for the weak Wolfe conditions, until five
+/// steps in a row gain less than `least_gain` each or `most_steps` are done; returns the value there. Finds a
+/// local minimum. The same input gives the same bits.
 ///   Sources: J. Nocedal and S. J. Wright, Numerical Optimization, 2nd ed., ch. 3 and 6; the line search by
 ///   bisection is that of A. S. Lewis and M. L. Overton, Math. Program. 141, 135 (2013).
 double minimise(const SmoothFunction& f, std::vector<double>& x, int most_steps, double least_gain);
