@@ -15,6 +15,7 @@ void add_check_command(CLI::App& app, Action& action);
 void add_run_command(CLI::App& app, Action& action);
 void add_tables_command(CLI::App& app, Action& action);
 void add_probe_command(CLI::App& app, Action& action);
+void add_compare_command(CLI::App& app, Action& action);
 void add_speed_command(CLI::App& app, Action& action);
 
 }  // namespace wanewall

@@ -26,6 +26,7 @@ constexpr const char* examples = R"(Examples:
   wanewall run drum.yaml                        compute it; writes drum.h5
   wanewall tables drum.h5                       reflection, power and probe tables
   wanewall probe drum.h5 --at "0 m, 0 m, 5 cm"  field at a point of the stored snapshots
+  wanewall compare large.h5 drum.h5             by how much records differ
   wanewall speed                                how fast this machine is
 
 Exit codes:
@@ -101,6 +102,7 @@ int main(int argc, char** argv) {
   wanewall::add_run_command(app, action);
   wanewall::add_tables_command(app, action);
   wanewall::add_probe_command(app, action);
+  wanewall::add_compare_command(app, action);
   wanewall::add_speed_command(app, action);
 
   try {

@@ -16,6 +16,9 @@ struct Provenance {
   std::string started_utc, ended_utc;  ///< "YYYY-MM-DD HH:mm:ss +0000"
   int threads = 0;
   std::string vector_code, schedule;
+  /// For a witness run: the record that it checks, the faces whose layers were exchanged, and for what. Else
+  /// empty.
+  std::string witness_of, witness_faces, witness_layer;
 };
 
 /// Writes a record beside its final name and gives it that name only when it is whole. A writer that is

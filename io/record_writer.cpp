@@ -159,6 +159,11 @@ void write_provenance(hdf5::File& file, const Provenance& provenance) {
   group.set_integer("threads", provenance.threads);
   group.set_text("vectorCode", provenance.vector_code);
   group.set_text("schedule", provenance.schedule);
+  if (!provenance.witness_of.empty()) {
+    group.set_text("witnessOf", provenance.witness_of);
+    group.set_text("witnessFaces", provenance.witness_faces);
+    group.set_text("witnessLayer", provenance.witness_layer);
+  }
   file.set_text("software", "Wanewall");
   file.set_text("softwareVersion", provenance.program_version);
   file.set_text("date", provenance.started_utc);

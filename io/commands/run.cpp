@@ -4,8 +4,11 @@
 #include <filesystem>
 #include <iostream>
 #include <memory>
+#include <optional>
+#include <stdexcept>
 #include <string>
 #include <system_error>
+#include <vector>
 
 #include "io/commands.hpp"
 #include "io/provenance.hpp"
@@ -13,6 +16,7 @@
 #include "io/scene.hpp"
 #include "io/tables_document.hpp"
 #include "io/terminal.hpp"
+#include "io/witness.hpp"
 
 namespace wanewall {
 namespace {
@@ -28,6 +32,8 @@ struct RunOptions {
   bool quiet = false;
   bool force = false;
   bool tables = false;
+  bool witness = false;
+  std::string witness_faces;
 };
 
 std::string xdmf_path_of(const std::string& record_path) {
@@ -75,15 +81,15 @@ void apply_overrides(Scene& scene, const RunOptions& options) {
 }
 
 // An allocation on Linux succeeds long before the memory is there, and the run would be killed in the night.
-void require_memory(const Problem& problem) {
+void require_memory(const Problem& problem, const std::string& run = "the run") {
   const double needed = footprint_of(problem).total();
   const double present = machine_memory_bytes();
   if (present > 0.0 && needed > present) {
     throw ProblemError(fmt::format(
-        "the run needs {} of memory, this machine has {}\n"
+        "{} needs {} of memory, this machine has {}\n"
         "  next: see what needs it with 'wanewall check', then make cells larger, the volume smaller, or "
         "record less",
-        bytes_text(needed), bytes_text(present)));
+        run, bytes_text(needed), bytes_text(present)));
   }
 }
 
@@ -149,24 +155,28 @@ std::string tables_text(const std::string& record_path) {
   return tables_markdown(record, audit_report(record.result.audit, record.lattice, everything), everything);
 }
 
-ExitCode run_scene(const RunOptions& options) {
-  const std::string started = utc_now();
-  const std::string record_path = options.record_path.empty()
-                                      ? fs::path(options.scene_path).stem().string() + ".h5"
-                                      : options.record_path;
-  Scene scene = read_scene(options.scene_path);
-  for (const std::string& warning : scene.warnings) warn("warning: " + warning + "\n");
-  require_free_target(record_path, options);
-  if (options.xdmf) require_free_target(xdmf_path_of(record_path), options);
-  apply_overrides(scene, options);
-  require_memory(scene.problem);
+// A run and what it is a witness of, if of anything.
+struct Planned {
+  Scene scene;
+  std::string record_path;
+  std::string witness_of, witness_faces;
+};
 
+struct Finished {
+  RunResult result;
+  ExitCode code = ExitCode::done;
+};
+
+Finished compute(const Planned& planned, const RunOptions& options) {
+  const Scene& scene = planned.scene;
+  const std::string started = utc_now();
   const ProgressStyle style = options.quiet ? ProgressStyle::none : progress_style_of_output();
   ProgressMonitor monitor(style, scene.problem.stop.energy_below_db.has_value(), terminal_columns(), say);
-  const StopSignals signals;
-  RecordWriter writer(record_path, scene);
-  if (!options.quiet) say(start_text(scene, record_path));
-  const RunResult result = run(scene.problem, writer, monitor);
+  RecordWriter writer(planned.record_path, scene);
+  if (!options.quiet) say(start_text(scene, planned.record_path));
+  Finished finished;
+  finished.result = run(scene.problem, writer, monitor);
+  const RunResult& result = finished.result;
   monitor.close();
 
   Provenance provenance = provenance_of_program();
@@ -175,22 +185,92 @@ ExitCode run_scene(const RunOptions& options) {
   provenance.threads = result.threads;
   provenance.vector_code = result.vector_code;
   provenance.schedule = name_of(scene.problem.schedule);
+  if (!planned.witness_of.empty()) {
+    provenance.witness_of = planned.witness_of;
+    provenance.witness_faces = planned.witness_faces;
+    provenance.witness_layer = witness_layer_text();
+  }
   writer.finish(result, provenance, options.xdmf);
 
-  const ExitCode code = exit_code_of(result.reason);
+  finished.code = exit_code_of(result.reason);
   const std::string ending = "the run " + reason_text(result, scene.problem) + "\n";
   // A run that did not end as planned says so even when it is told to be quiet.
-  if (code != ExitCode::done) {
+  if (finished.code != ExitCode::done) {
     warn("wanewall: " + ending);
   } else if (!options.quiet) {
     say(ending);
   }
   if (!options.quiet) {
-    say(cost_text(result, scene.problem) + "wrote " + record_path + "\n");
-    if (options.xdmf) say("wrote " + xdmf_path_of(record_path) + "\n");
+    say(cost_text(result, scene.problem) + "wrote " + planned.record_path + "\n");
+    if (options.xdmf) say("wrote " + xdmf_path_of(planned.record_path) + "\n");
   }
-  if (options.tables && code != ExitCode::not_finite) std::cout << "\n" << tables_text(record_path);
-  return code;
+  return finished;
+}
+
+std::vector<double> compared_frequencies_hz(const Scene& scene, const RunResult& result) {
+  if (!result.audit.frequencies_hz.empty()) return result.audit.frequencies_hz;
+  constexpr int n = 9;
+  std::vector<double> frequencies_hz;
+  for (int i = 0; i < n; ++i)
+    frequencies_hz.push_back(scene.band_lo_hz + (scene.band_hi_hz - scene.band_lo_hz) * i / (n - 1));
+  return frequencies_hz;
+}
+
+// The second run, and what the two say about the shell of the first. Both have the same number of steps.
+ExitCode compute_witness(const Planned& first, const RunResult& result, Planned witness,
+                         const FaceChoice& faces, const RunOptions& options) {
+  StopRule& stop = witness.scene.problem.stop;
+  stop.at_s = time_of_e_s(result.steps, witness.scene.problem.lattice.dt_s);
+  stop.energy_below_db.reset();
+  const Finished second = compute(witness, options);
+  if (second.code == ExitCode::not_finite) return second.code;
+  std::cout << "\n"
+            << witness_text(first.scene, result, witness.scene, second.result, faces,
+                            compared_frequencies_hz(first.scene, result));
+  return second.code;
+}
+
+ExitCode run_scene(const RunOptions& options) {
+  Planned first;
+  first.record_path = options.record_path.empty() ? fs::path(options.scene_path).stem().string() + ".h5"
+                                                  : options.record_path;
+  first.scene = read_scene(options.scene_path);
+  for (const std::string& warning : first.scene.warnings) warn("warning: " + warning + "\n");
+  apply_overrides(first.scene, options);
+
+  std::optional<Planned> second;
+  FaceChoice faces{};
+  if (options.witness) {
+    try {
+      faces = witness_faces(options.witness_faces, first.scene.problem);
+    } catch (const std::invalid_argument& error) {
+      warn(fmt::format("wanewall: --witness: {}\n  next: wanewall run --help\n", error.what()));
+      return ExitCode::command_line;
+    }
+    second = Planned{witness_scene(first.scene, faces),
+                     witness_record_path(first.record_path, faces, first.scene.problem),
+                     fs::path(first.record_path).filename().string(), face_list_text(faces)};
+  }
+  // All that can stop either run is found before the first begins.
+  require_free_target(first.record_path, options);
+  if (options.xdmf) require_free_target(xdmf_path_of(first.record_path), options);
+  if (second) {
+    require_free_target(second->record_path, options);
+    if (options.xdmf) require_free_target(xdmf_path_of(second->record_path), options);
+  }
+  require_memory(first.scene.problem);
+  if (second) require_memory(second->scene.problem, "the witness run");
+
+  const StopSignals signals;
+  const Finished finished = compute(first, options);
+  if (options.tables && finished.code != ExitCode::not_finite)
+    std::cout << "\n" << tables_text(first.record_path);
+  if (!second) return finished.code;
+  if (finished.code != ExitCode::done) {
+    warn("wanewall: no witness run after a run that did not end as planned\n");
+    return finished.code;
+  }
+  return compute_witness(first, finished.result, std::move(*second), faces, options);
 }
 
 }  // namespace
@@ -198,7 +278,7 @@ ExitCode run_scene(const RunOptions& options) {
 void add_run_command(CLI::App& app, Action& action) {
   auto options = std::make_shared<RunOptions>();
   CLI::App* command = app.add_subcommand("run", "Compute a scene and write its record");
-  command->add_option("scene", options->scene_path, "Scene file (YAML)")->required();
+  command->add_option("scene", options->scene_path, "Scene file (YAML)");
   command->add_option("--record", options->record_path,
                       "Record file to write; default: the scene's name with .h5, in the current folder");
   command->add_option("--threads", options->threads, "Threads; default: the scene's, else one per processor")
@@ -210,14 +290,31 @@ void add_run_command(CLI::App& app, Action& action) {
                     "Also write an XDMF file beside the record, for general viewers");
   command->add_flag("--force", options->force, "Replace an existing record, once the new one is whole");
   command->add_flag("--tables", options->tables, "Print the tables at the end, as 'wanewall tables' does");
+  CLI::Option* witness =
+      command
+          ->add_option(
+              "--witness", options->witness_faces,
+              "Then run the scene again behind a much thicker shell, into RECORD_witness.h5, and print "
+              "what the shell changed; FACES such as x-,z+ exchanges these only, at less cost")
+          ->expected(0, 1)
+          ->type_name("[FACES]");
   command->add_flag("--quiet", options->quiet, "Say nothing unless something is wrong");
   command->footer(
       "Ctrl-C ends the run at the next step and keeps what was computed (exit code 5); a second Ctrl-C ends "
       "at once\n"
       "and keeps nothing.\n\n"
       "Example:\n"
-      "  wanewall run drum.yaml --record night/drum.h5 --threads 8 --xdmf");
-  command->callback([options, &action] { action = [options] { return run_scene(*options); }; });
+      "  wanewall run drum.yaml --record night/drum.h5 --threads 8 --xdmf\n"
+      "  wanewall run drum.yaml --witness            how far the shell can be trusted, for all faces\n"
+      "  wanewall run drum.yaml --witness z-         for the face at the bottom");
+  command->callback([options, witness, &action] {
+    options->witness = witness->count() > 0;
+    // `run --witness SCENE`: the option's value is optional, and a scene is no list of faces.
+    if (options->scene_path.empty() && !names_faces(options->witness_faces))
+      std::swap(options->scene_path, options->witness_faces);
+    if (options->scene_path.empty()) throw CLI::RequiredError("scene");
+    action = [options] { return run_scene(*options); };
+  });
 }
 
 }  // namespace wanewall
