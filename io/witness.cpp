@@ -2,12 +2,10 @@
 
 #include <fmt/format.h>
 
-#include <cmath>
 #include <filesystem>
 #include <stdexcept>
+#include <utility>
 
-#include "geometry/constants.hpp"
-#include "io/quantity.hpp"
 #include "postproc/witness_tables.hpp"
 
 namespace wanewall {
@@ -76,40 +74,42 @@ std::string witness_record_path(const std::string& record_path, const FaceChoice
   return (path.parent_path() / (name + path.extension().string())).string();
 }
 
-Scene witness_scene(const Scene& scene, const FaceChoice& faces) {
-  Scene witness = scene;
-  witness.problem = with_witness_shell(scene.problem, faces);
-  if (!scene.title.empty()) witness.title = scene.title + " (witness)";
-  witness.used.push_back({"witness.faces", face_list_text(faces), false});
-  witness.used.push_back({"witness.layer", witness_layer_text(), false});
-  return witness;
+WitnessScene witness_scene(const Scene& scene, const FaceChoice& faces) {
+  Witness witness = with_witness_shell(scene.problem, faces);
+  WitnessScene result{scene, faces, witness.floor_db, witness.floor_side};
+  result.scene.problem = std::move(witness.problem);
+  if (!scene.title.empty()) result.scene.title = scene.title + " (witness)";
+  result.scene.used.push_back({"witness.faces", face_list_text(faces), false});
+  result.scene.used.push_back({"witness.layer", witness_layer_text(), false});
+  return result;
 }
 
-std::string witness_text(const Scene& scene, const RunResult& run, const Scene& witness,
-                         const RunResult& witness_run, const FaceChoice& faces,
-                         const std::vector<double>& frequencies_hz) {
-  const PredictedFloor floor = predicted_floor(witness.problem, faces, frequencies_hz);
+std::string witness_text(const Scene& scene, const RunResult& run, const WitnessScene& witness,
+                         const RunResult& witness_run, const std::vector<double>& frequencies_hz) {
+  const Problem& problem = witness.scene.problem;
   std::string text = fmt::format(
       "## What the shell changed\n\n"
       "- The run against its witness, whose faces {} have layers of {}.\n"
-      "- The witness's own floor: on the lattice its layers return at most {:.1f} dB of a plane wave between "
-      "0 and 80\n"
-      "  degrees (face {}, {}, {:.0f} degrees). A smaller change is printed as a bound.\n"
+      "- The witness's own floor: {:.1f} dB (face {}), the largest reflection of its layers that the lattice "
+      "predicts, over\n"
+      "  frequencies and over propagating, grazing and evanescent waves as far as they reach the clear "
+      "volume. A smaller\n"
+      "  change is printed as a bound.\n"
       "- Peak: largest |F| over time in the witness run; error bar: largest change of F over time. The other "
       "errors of a\n"
       "  run, of the mesh above all, are the same in both and not in it.\n",
-      face_list_text(faces), witness_layer_text(), floor.worst_db, name_of(floor.side),
-      format_quantity(floor.frequency_hz, Family::frequency, 4), floor.angle_rad * 180.0 / pi);
-  if (witness.problem.precision == Precision::single_precision)
+      face_list_text(witness.faces), witness_layer_text(), witness.floor_db, name_of(witness.floor_side));
+  if (problem.precision == Precision::single_precision)
     text += "- Single precision: the two runs also round differently, which shows near -100 dB and below.\n";
   const Comparison comparison =
-      compare({witness.problem.lattice, witness_run}, {scene.problem.lattice, run}, frequencies_hz);
+      compare({problem.lattice, witness_run}, {scene.problem.lattice, run}, frequencies_hz);
   for (const std::string& note : comparison.notes) text += "- Note: " + note + "\n";
   text += "\n";
-  if (!comparison.points.empty()) text += to_markdown(witness_point_table(comparison, floor.worst_db)) + "\n";
+  if (!comparison.points.empty())
+    text += to_markdown(witness_point_table(comparison, witness.floor_db)) + "\n";
   if (!comparison.faces.empty())
     text += "Fourier sums on the audit planes, over the clear cross-section:\n\n" +
-            to_markdown(witness_face_table(comparison, floor.worst_db)) + "\n";
+            to_markdown(witness_face_table(comparison, witness.floor_db)) + "\n";
   if (comparison.points.empty() && comparison.faces.empty())
     text += "The scene records neither points nor audit planes, so there is nothing to compare.\n";
   return text;

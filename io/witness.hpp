@@ -25,11 +25,16 @@ std::string witness_record_path(const std::string& record_path, const FaceChoice
                                 const Problem& problem);
 
 /// The scene with the layers of the chosen faces exchanged; its used values say so.
-Scene witness_scene(const Scene& scene, const FaceChoice& faces);
+struct WitnessScene {
+  Scene scene;
+  FaceChoice faces{};
+  double floor_db = 0.0;  ///< see Witness
+  Side floor_side = Side::x_lo;
+};
+WitnessScene witness_scene(const Scene& scene, const FaceChoice& faces);
 
 /// What the shell changed, as Markdown: tables with error bars, and the witness's own floor.
-std::string witness_text(const Scene& scene, const RunResult& run, const Scene& witness,
-                         const RunResult& witness_run, const FaceChoice& faces,
-                         const std::vector<double>& frequencies_hz);
+std::string witness_text(const Scene& scene, const RunResult& run, const WitnessScene& witness,
+                         const RunResult& witness_run, const std::vector<double>& frequencies_hz);
 
 }  // namespace wanewall

@@ -1,7 +1,7 @@
 # The Debian packages that the project needs, and how the scripts get them. Sourced, not run.
 
 build_packages=(g++ make cmake libeigen3-dev libhdf5-dev libyaml-cpp-dev libcli11-dev libfmt-dev)
-test_packages=(catch2 python3-jsonschema python3-yaml)
+test_packages=(catch2 gnuplot-nox python3-jsonschema python3-yaml)
 ci_packages=(clang-14 libomp-14-dev dpkg-dev file)
 
 # Installs what is missing of the packages named, and nothing else.

@@ -217,17 +217,25 @@ std::vector<double> compared_frequencies_hz(const Scene& scene, const RunResult&
 }
 
 // The second run, and what the two say about the shell of the first. Both have the same number of steps.
-ExitCode compute_witness(const Planned& first, const RunResult& result, Planned witness,
-                         const FaceChoice& faces, const RunOptions& options) {
+ExitCode compute_witness(const Planned& first, const RunResult& result, WitnessScene& witness,
+                         const RunOptions& options) {
   StopRule& stop = witness.scene.problem.stop;
   stop.at_s = time_of_e_s(result.steps, witness.scene.problem.lattice.dt_s);
   stop.energy_below_db.reset();
-  const Finished second = compute(witness, options);
+  const Finished second =
+      compute({witness.scene, witness_record_path(first.record_path, witness.faces, first.scene.problem),
+               fs::path(first.record_path).filename().string(), face_list_text(witness.faces)},
+              options);
   if (second.code == ExitCode::not_finite) return second.code;
   std::cout << "\n"
-            << witness_text(first.scene, result, witness.scene, second.result, faces,
+            << witness_text(first.scene, result, witness, second.result,
                             compared_frequencies_hz(first.scene, result));
   return second.code;
+}
+
+void require_free_targets(const std::string& record_path, const RunOptions& options) {
+  require_free_target(record_path, options);
+  if (options.xdmf) require_free_target(xdmf_path_of(record_path), options);
 }
 
 ExitCode run_scene(const RunOptions& options) {
@@ -237,8 +245,6 @@ ExitCode run_scene(const RunOptions& options) {
   first.scene = read_scene(options.scene_path);
   for (const std::string& warning : first.scene.warnings) warn("warning: " + warning + "\n");
   apply_overrides(first.scene, options);
-
-  std::optional<Planned> second;
   FaceChoice faces{};
   if (options.witness) {
     try {
@@ -247,30 +253,28 @@ ExitCode run_scene(const RunOptions& options) {
       warn(fmt::format("wanewall: --witness: {}\n  next: wanewall run --help\n", error.what()));
       return ExitCode::command_line;
     }
-    second = Planned{witness_scene(first.scene, faces),
-                     witness_record_path(first.record_path, faces, first.scene.problem),
-                     fs::path(first.record_path).filename().string(), face_list_text(faces)};
   }
   // All that can stop either run is found before the first begins.
-  require_free_target(first.record_path, options);
-  if (options.xdmf) require_free_target(xdmf_path_of(first.record_path), options);
-  if (second) {
-    require_free_target(second->record_path, options);
-    if (options.xdmf) require_free_target(xdmf_path_of(second->record_path), options);
-  }
+  require_free_targets(first.record_path, options);
+  if (options.witness)
+    require_free_targets(witness_record_path(first.record_path, faces, first.scene.problem), options);
   require_memory(first.scene.problem);
-  if (second) require_memory(second->scene.problem, "the witness run");
+  std::optional<WitnessScene> witness;
+  if (options.witness) {
+    witness = witness_scene(first.scene, faces);
+    require_memory(witness->scene.problem, "the witness run");
+  }
 
   const StopSignals signals;
   const Finished finished = compute(first, options);
   if (options.tables && finished.code != ExitCode::not_finite)
     std::cout << "\n" << tables_text(first.record_path);
-  if (!second) return finished.code;
+  if (!witness) return finished.code;
   if (finished.code != ExitCode::done) {
     warn("wanewall: no witness run after a run that did not end as planned\n");
     return finished.code;
   }
-  return compute_witness(first, finished.result, std::move(*second), faces, options);
+  return compute_witness(first, finished.result, *witness, options);
 }
 
 }  // namespace

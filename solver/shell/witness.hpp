@@ -3,7 +3,6 @@
 
 #include <array>
 #include <string>
-#include <vector>
 
 #include "solver/problem.hpp"
 
@@ -15,23 +14,21 @@ using FaceChoice = std::array<bool, 6>;
 /// All faces that absorb.
 FaceChoice absorbing_faces(const Problem& problem);
 
-/// The problem with layers of another kind and thickness on the chosen faces. Mesh lines of the clear volume,
-/// time step, sources and recordings stay as they are, bit for bit; shells keep the lines they have and go on
-/// with their outermost cell. Throws ProblemError when a chosen face does not absorb.
-Problem with_witness_shell(const Problem& problem, const FaceChoice& faces);
-
-/// "cfs_pml, 40 cells" for the layers that with_witness_shell puts in.
-std::string witness_layer_text();
-
-/// The largest reflection that the lattice predicts for the chosen faces of a problem: plane waves between 0
-/// and 80 degrees, in every medium that touches the face, at the given frequencies.
-struct PredictedFloor {
-  double worst_db = 0.0;
-  Side side = Side::x_lo;
-  double frequency_hz = 0.0;
-  double angle_rad = 0.0;
+struct Witness {
+  Problem problem;
+  /// The witness's own floor: largest reflection that the lattice predicts for its layers, over frequencies
+  /// and over propagating, grazing and evanescent waves as far as they reach the clear volume
+  /// (design_points.hpp) [dB], and the face where that is.
+  double floor_db = 0.0;
+  Side floor_side = Side::x_lo;
 };
-PredictedFloor predicted_floor(const Problem& problem, const FaceChoice& faces,
-                               const std::vector<double>& frequencies_hz);
+
+/// The problem with designed layers of twenty Moebius cells on the chosen faces. Mesh lines of the clear
+/// volume, time step, sources and recordings stay as they are, bit for bit; shells keep the lines they have
+/// and go on with their outermost cell. Throws ProblemError when a chosen face does not absorb.
+Witness with_witness_shell(const Problem& problem, const FaceChoice& faces);
+
+/// "moebius, 20 cells": what with_witness_shell puts in.
+std::string witness_layer_text();
 
 }  // namespace wanewall

@@ -18,7 +18,7 @@ bool has(const std::string& text, const std::string& piece) {
   return text.find(piece) != std::string::npos;
 }
 
-const std::vector<std::string> commands{"check", "run", "tables", "probe", "speed"};
+const std::vector<std::string> commands{"check", "run", "tables", "probe", "compare", "speed"};
 
 }  // namespace
 
