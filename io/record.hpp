@@ -18,7 +18,7 @@ struct Provenance {
   std::string vector_code, schedule;
   /// For a witness run: the record that it checks, the faces whose layers were exchanged, and for what. Else
   /// empty.
-  std::string witness_of, witness_faces, witness_layer;
+  std::string witness_of{}, witness_faces{}, witness_layer{};
 };
 
 /// Writes a record beside its final name and gives it that name only when it is whole. A writer that is
