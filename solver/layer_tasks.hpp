@@ -51,7 +51,9 @@ struct ColumnTask {
   std::ptrdiff_t h_minus = 0;  ///< from a node's H row back to the one before it along the axis; positive
   Real* memory[2]{};           ///< A of cell 0; D is one row further
   std::ptrdiff_t memory_step = 0;
-  Real* difference[2]{};  ///< out: (M^-1 df)_0
+  std::ptrdiff_t h_ahead = 0;       ///< to the H rows that will be wanted next; only a hint
+  std::ptrdiff_t memory_ahead = 0;  ///< to the memory that will be wanted next; only a hint
+  Real* difference[2]{};            ///< out: (M^-1 df)_0
   std::ptrdiff_t difference_step = 0;
 };
 

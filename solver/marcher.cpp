@@ -252,6 +252,11 @@ void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* differ
   task.h_minus = stride;
   task.memory_step = step * (along_x ? column_memory_.x_stride() : column_memory_.y_stride());
   task.difference_step = step * difference_step;
+  // Across x the next row's columns follow soon; across y the rest of a plane lies between.
+  constexpr std::ptrdiff_t soon = 256 / sizeof(Real);
+  task.h_ahead = along_x ? layout_.row : soon;
+  task.memory_ahead =
+      along_x ? column_memory_.x(slot, across + 1, 0) - column_memory_.x(slot, across, 0) : soon;
   for (int c = 0; c < 2; ++c) {
     // E of the next axis changes with H of the one after, and the other way round.
     const Axis h = c == 0 ? next(next(axis)) : next(axis);

@@ -1,5 +1,7 @@
 // Included by row_kernels_*.cpp with WANEWALL_VECTOR_BYTES and WANEWALL_VECTOR_NAMESPACE set. Rows are
 // padded, so there is no remainder: every span is a whole number of cache lines and every store is aligned.
+#include <utility>
+
 #include "solver/row_kernels.hpp"
 
 namespace wanewall {
@@ -165,8 +167,8 @@ void advance_h(const RowTask<Real>& t) {
 
 template <class Real>
 RowKernels<Real> make_kernels(std::string_view name) {
-  return {advance_e<Real>,        advance_h<Real>,       z_layer_e<Real>,   z_layer_h<Real, false>,
-          z_layer_h<Real, true>,  moebius_columns<Real>, z_moebius_e<Real>, name};
+  return {advance_e<Real>,      advance_h<Real>,       z_layer_e<Real>,   z_layer_h<Real>,
+          z_layer_h_late<Real>, moebius_columns<Real>, z_moebius_e<Real>, name};
 }
 
 }  // namespace WANEWALL_VECTOR_NAMESPACE

@@ -37,26 +37,43 @@ Problem bare_cube(int cells, Schedule schedule, int threads) {
   return problem;
 }
 
-/// The same clear cube inside a 10-cell shell on six faces, crossed by an oblique plane wave.
-Problem full_scene(int clear_cells, int threads) {
-  constexpr int shell = 10, inset = 6;
-  Problem problem = bare_cube(clear_cells + 2 * shell, Schedule::fused, threads);
-  PolynomialGrading grading;
-  grading.sigma_max_s_per_m = sigma_max_rule(grading.order, cell_m, 1.0);
-  grading.alpha_max_s_per_m = 0.01;
-  for (Side side : all_sides) {
-    const auto at = static_cast<std::size_t>(index_of(side));
-    problem.faces[at] = {FaceKind::cfs_pml, polynomial_layer(grading, shell), {}, 1};
-    problem.lattice.shell_cells[at] = shell;
+constexpr int shell_cells = 10;
+
+/// The same clear cube inside a shell on six faces. What the layers' numbers are makes no difference to the
+/// time.
+Problem cube_in_shell(int clear_cells, FaceKind kind, int threads) {
+  Problem problem = bare_cube(clear_cells + 2 * shell_cells, Schedule::fused, threads);
+  Face face;
+  face.kind = kind;
+  if (kind == FaceKind::moebius) {
+    for (int j = 0; j < shell_cells; ++j) {
+      face.moebius.kappa.push_back(0.25);
+      face.moebius.sigma_s_per_m.push_back(2.0 * (j + 1) / (eta0_ohm * cell_m));
+      face.moebius.alpha_s_per_m.push_back(0.01 / (eta0_ohm * cell_m));
+    }
+  } else {
+    PolynomialGrading grading;
+    grading.sigma_max_s_per_m = sigma_max_rule(grading.order, cell_m, 1.0);
+    grading.alpha_max_s_per_m = 0.01;
+    face.layer = polynomial_layer(grading, shell_cells);
   }
+  problem.faces.fill(face);
+  problem.lattice.shell_cells.fill(shell_cells);
+  return problem;
+}
+
+/// The cube in its Moebius shell, crossed by an oblique plane wave.
+Problem full_scene(int clear_cells, int threads) {
+  constexpr int inset = 6;
+  Problem problem = cube_in_shell(clear_cells, FaceKind::moebius, threads);
   PlaneWave wave;
   wave.theta_rad = 37.3 * pi / 180.0;
   wave.phi_rad = 71.9 * pi / 180.0;
   wave.e_angle_rad = 0.25 * pi;
   wave.pulse = modulated_gaussian_for_band(c0_m_per_s / (40.0 * cell_m), c0_m_per_s / (12.0 * cell_m));
   for (std::size_t a = 0; a < 3; ++a) {
-    wave.box_lo[a] = shell + inset;
-    wave.box_hi[a] = shell + clear_cells - inset;
+    wave.box_lo[a] = shell_cells + inset;
+    wave.box_hi[a] = shell_cells + clear_cells - inset;
   }
   problem.plane_wave = wave;
   return problem;
@@ -109,10 +126,14 @@ ExitCode measure(const Options& options) {
   Marcher<float> fused(bare_cube(options.cells, Schedule::fused, threads), threads);
   const Problem scene = full_scene(options.cells, threads);
   Marcher<float> full(scene, threads);
+  Marcher<float> cfs(cube_in_shell(options.cells, FaceKind::cfs_pml, threads), threads);
+  Marcher<float> moebius(cube_in_shell(options.cells, FaceKind::moebius, threads), threads);
   std::vector<Contender> contenders{
       {"textbook loop", n * n * n, [&](int steps) { loop.advance(steps); }},
       {"plain sweeps, bare cube", n * n * n, [&](int steps) { plain.advance(steps, {}); }},
       {"fused sweep, bare cube", n * n * n, [&](int steps) { fused.advance(steps, {}); }},
+      {"fused, in a cfs_pml shell", scene.lattice.n_cells(), [&](int steps) { cfs.advance(steps, {}); }},
+      {"fused, in a moebius shell", scene.lattice.n_cells(), [&](int steps) { moebius.advance(steps, {}); }},
       {"fused sweep, full scene", scene.lattice.n_cells(), [&](int steps) { full.advance(steps, {}); }}};
   // The first round warms up; then all take turns, so that a machine that slows down slows all.
   for (int repeat = 0; repeat <= options.repeats; ++repeat) {
@@ -127,10 +148,9 @@ ExitCode measure(const Options& options) {
   fmt::print("processor: {}, {} threads, {} code, single precision, Courant number {}\n",
              provenance_of_program().processor, threads, full.vector_code(), courant);
   fmt::print(
-      "cube of {} cells; full scene: the cube as clear volume in a 10-cell cfs_pml shell on six faces, "
-      "oblique "
-      "plane wave, all {} cells counted\n",
-      options.cells, scene.lattice.n_cells());
+      "cube of {} cells; in a shell: the cube as clear volume, {} layer cells on six faces, all {} cells "
+      "counted; full scene: moebius shell and an oblique plane wave\n",
+      options.cells, shell_cells, scene.lattice.n_cells());
   fmt::print("{} rounds of {} steps in turn; textbook loop and solver agree to {:.1e}\n\n", options.repeats,
              options.steps, difference);
   fmt::print("| {:<25} | median [Gcell/s] | least [Gcell/s] | most [Gcell/s] | over the textbook loop |\n",
@@ -142,7 +162,13 @@ ExitCode measure(const Options& options) {
     fmt::print("| {:<25} | {:16.3f} | {:15.3f} | {:14.3f} | {:22.2f} |\n", contender.name, contender.median(),
                *least, *most, contender.median() / contenders[0].median());
   }
-  fmt::print("\nmemory of the full scene: {:.1f} bytes per clear cell (fields, layers, media)\n",
+  fmt::print("\nmoebius shell over cfs_pml shell: {:.3f}\n", contenders[4].median() / contenders[3].median());
+  const auto layer_words = [&](const Marcher<float>& m) {
+    return static_cast<double>(m.layer_bytes()) / (scene.lattice.n_cells() - n * n * n);
+  };
+  fmt::print("layer memory per shell cell: cfs_pml {:.1f}, moebius {:.1f} bytes\n", layer_words(cfs),
+             layer_words(moebius));
+  fmt::print("memory of the full scene: {:.1f} bytes per clear cell (fields, layers, media)\n",
              held / (n * n * n));
   return ExitCode::done;
 }
