@@ -86,7 +86,7 @@ reference_of() { # makes SCENE_reference.h5 and says what it is
     run "${scene}_reference_run" --witness >&2
     mv "${scene}_reference_run_witness.h5" "${scene}_reference.h5"
     sed -n '/^## What the shell changed/,$p' "${scene}_reference_run.log" >"${scene}_witness.txt"
-    echo "witness ($(sed -n 's/.*layers of \(.*\)\./\1/p' "${scene}_witness.txt"))"
+    echo "witness of $(sed -n 's/.*layers of \(.*\), \(.*\)\.$/\2 \1/p' "${scene}_witness.txt")"
   fi
 }
 
