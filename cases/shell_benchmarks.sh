@@ -1,7 +1,7 @@
 #!/usr/bin/env bash
 # How well shells absorb: runs the scenes of cases/shell_benchmarks/ behind shells of several kinds and thicknesses and
 # compares each with a reference that has (next to) no shell error. Writes, per scene, the comparison as text and CSV and
-# pictures of the error against time, and one summary. Needs the built program and gnuplot.
+# pictures of the error against time, and one summary. Needs the built program; pictures need gnuplot-nox.
 #   bash cases/shell_benchmarks.sh [--out FOLDER] [--scenes "square box ..."] [--kinds "moebius ..."] [--cells "5 8 ..."]
 #                                  [--large] [--program PATH]
 #   --scenes   square, plate, box, long_box, ground, slab, long_run; default: square box ground
@@ -30,6 +30,8 @@ while [ $# -gt 0 ]; do
   esac
 done
 [ -x "$program" ] || { echo "$program is missing; build it first: bash cases/first_run.sh" >&2; exit 1; }
+pictures=yes
+command -v gnuplot >/dev/null || { pictures=no; echo "No pictures without gnuplot: sudo apt install gnuplot-nox" >&2; }
 mkdir -p "$out"
 cd "$out"
 # Small runs: one thread each, as many side by side as there are processors.
@@ -124,16 +126,17 @@ for scene in $scenes; do
     done | tee long_run.txt
     continue
   fi
-  "$program" compare "${scene}_reference.h5" "${names[@]/%/.h5}" --csv "$scene.csv" >"$scene.txt" 2>/dev/null
+  "$program" compare "${scene}_reference.h5" "${names[@]/%/.h5}" --csv "$scene.csv" >"$scene.txt"
   summary_of "$scene" "$reference" "$scene.csv" >>summary.csv
+  [ "$pictures" = yes ] || continue
   middle=$(echo "$cells" | tr ' ' '\n' | grep -x 10 || echo "${cells%% *}")
   same_cells=()
   for kind in $kinds; do same_cells+=("${scene}_${kind}_$middle.h5"); done
-  "$program" compare "${scene}_reference.h5" "${same_cells[@]}" --picture "${scene}_kinds_$middle.svg" >/dev/null 2>&1
+  "$program" compare "${scene}_reference.h5" "${same_cells[@]}" --picture "${scene}_kinds_$middle.svg" >/dev/null
   first=${kinds%% *}
   same_kind=()
   for n in $cells; do same_kind+=("${scene}_${first}_$n.h5"); done
-  "$program" compare "${scene}_reference.h5" "${same_kind[@]}" --picture "${scene}_${first}.svg" >/dev/null 2>&1
+  "$program" compare "${scene}_reference.h5" "${same_kind[@]}" --picture "${scene}_${first}.svg" >/dev/null
 done
 
 # The summary for people: one line per scene and kind, one column per number of cells; peak and band errors.

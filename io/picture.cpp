@@ -74,7 +74,7 @@ std::string gnuplot_script(const LineChart& chart) {
       "set encoding utf8\n"
       "set datafile missing 'NaN'\n"
       "set grid linecolor '#cccccc' linewidth 0.5\n"
-      "set key outside below maxcols 2\n";
+      "set key outside below maxcols 2 spacing 1.25\n";
   script += fmt::format("set title {}\nset xlabel {}\nset ylabel {}\n", quoted(chart.title),
                         quoted(chart.x_label), quoted(chart.y_label));
   script +=

@@ -137,8 +137,11 @@ TEST_CASE("Runs of different length are compared where both exist", "[compare]")
   REQUIRE(c.notes.size() == 1);
   CHECK_THAT(c.notes[0], Catch::Contains("60 samples against 100"));
   CHECK(worst_peak_db(c) == -std::numeric_limits<double>::infinity());
-  // Spectra of the same window: equal, too.
-  CHECK(worst_in_band_db(c.points[0].e) == -std::numeric_limits<double>::infinity());
+  // The spectra are of the same window, so that a scaled field has that error in the band as well.
+  for (auto& values : run.points[0].values)
+    for (double& v : values) v *= 1.001;
+  const Comparison scaled = compare({lattice, reference}, {lattice, run}, band_hz);
+  for (const double db : scaled.points[0].e.spectrum_db) CHECK(db == Approx(-60.0).margin(1e-6));
 }
 
 TEST_CASE("What cannot be compared is told and left out", "[compare]") {
@@ -197,6 +200,17 @@ TEST_CASE("Audit planes are compared inside the clear cross-section, whatever th
   for (std::size_t f = 0; f < band_hz.size(); ++f) {
     CHECK(c.faces[0].e_db[f] == Approx(-40.0).margin(1e-3));
     CHECK(c.faces[0].e_change_v_s_per_m[f] == Approx(1e-11 * (1.0 + static_cast<double>(f))).epsilon(1e-3));
+  }
+
+  // A reference that is larger along y on both sides shares the smaller one's cross-section.
+  Lattice wide = thin;
+  wide.lines[1] = MeshLines::uniform(-8e-3, 1e-3, 10 + 6 + 12);
+  RunResult larger;
+  larger.audit = x_audit(wide, 1.0);
+  for (const Comparison& either :
+       {compare({wide, larger}, {thin, run}, band_hz), compare({thin, run}, {wide, larger}, band_hz)}) {
+    REQUIRE(either.faces.size() == 1);
+    for (const double db : either.faces[0].e_db) CHECK(db == Approx(-40.0).margin(0.1));
   }
 
   run.audit.frequencies_hz.back() *= 1.01;
