@@ -16,6 +16,7 @@ void add_run_command(CLI::App& app, Action& action);
 void add_tables_command(CLI::App& app, Action& action);
 void add_probe_command(CLI::App& app, Action& action);
 void add_compare_command(CLI::App& app, Action& action);
+void add_shell_command(CLI::App& app, Action& action);
 void add_speed_command(CLI::App& app, Action& action);
 
 }  // namespace wanewall

@@ -27,6 +27,8 @@ constexpr const char* examples = R"(Examples:
   wanewall tables drum.h5                       reflection, power and probe tables
   wanewall probe drum.h5 --at "0 m, 0 m, 5 cm"  field at a point of the stored snapshots
   wanewall compare large.h5 drum.h5             by how much records differ
+  wanewall shell predict drum.yaml              what its shell will reflect
+  wanewall shell design drum.yaml               which layers it should have
   wanewall speed                                how fast this machine is
 
 Exit codes:
@@ -103,6 +105,7 @@ int main(int argc, char** argv) {
   wanewall::add_tables_command(app, action);
   wanewall::add_probe_command(app, action);
   wanewall::add_compare_command(app, action);
+  wanewall::add_shell_command(app, action);
   wanewall::add_speed_command(app, action);
 
   try {

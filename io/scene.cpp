@@ -23,11 +23,14 @@ Scene parse_scene(const std::string& text, const std::string& name, const std::s
   scene::Cursor root(reading, tree.get(), scene::scene_block(), "");
   scene::read_head(root, scene);
   scene::read_media(root, scene);
-  scene::read_lattice(root, scene);
-  scene::read_layers(root, scene);
+  scene::read_kinds(root, scene);
+  // The layers are designed for what stands in the clear volume, so the lattice gets its shell last.
+  const Vec3 cell_m = scene::read_clear_lattice(root, scene);
   scene::read_objects(root, scene);
   scene::read_illumination(root, reading, scene);
   scene::read_stop(root, scene);
+  scene::read_layers(root, reading, scene);
+  scene::add_shell(root, scene, cell_m);
   scene::read_record(root, scene);
   scene::check_scene(root, reading, scene);
   scene.used = std::move(reading.used);

@@ -1,10 +1,14 @@
 // A scene as read from its file: the problem to run and what the user asked for in their own words.
 #pragma once
 
+#include <array>
+#include <optional>
 #include <string>
 #include <vector>
 
 #include "solver/problem.hpp"
+#include "solver/shell/design.hpp"
+#include "solver/shell/surroundings.hpp"
 
 namespace wanewall {
 
@@ -15,6 +19,15 @@ struct UsedValue {
   bool by_default = false;
 };
 
+/// How a face came to its table.
+struct FaceDesign {
+  enum class Origin { searched, polynomial, listed };
+  Origin origin = Origin::searched;
+  std::optional<double> goal_db;         ///< what the number of cells was chosen for
+  std::optional<DesignInputs> inputs;    ///< of layers with a stretch
+  std::optional<DesignFigures> figures;  ///< of the table on those inputs
+};
+
 struct Scene {
   std::string file;
   std::string text;
@@ -22,6 +35,9 @@ struct Scene {
   double band_lo_hz = 0.0;
   double band_hi_hz = 0.0;
   Problem problem;
+  ShellSurroundings surroundings;
+  DesignOverrides design_overrides;
+  std::array<FaceDesign, 6> designs;  ///< of absorbing faces with a layer, indexed by Side
   std::vector<UsedValue> used;
   std::vector<std::string> warnings;
 };

@@ -177,28 +177,55 @@ std::string illumination_part(const Scene& scene) {
   return text + aligned({at, level});
 }
 
-/// A value used, as the scene says it; "-" when it was not.
-std::string used_value(const Scene& scene, const std::string& path) {
+/// How a face came to its cells.
+std::string reason_text(const Scene& scene, Side side) {
+  const auto s = static_cast<std::size_t>(index_of(side));
+  const FaceDesign& design = scene.designs[s];
+  if (design.origin == FaceDesign::Origin::listed) return "listed";
+  if (design.origin == FaceDesign::Origin::polynomial) return "polynomial";
+  if (design.goal_db) return fmt::format("fewest for {:.0f} dB", *design.goal_db);
   for (const UsedValue& value : scene.used)
-    if (value.path == path) return value.value;
-  return "-";
+    if (value.path == fmt::format("shell.faces.{}.cells", name_of(side)) && value.by_default)
+      return scene.problem.precision == Precision::single_precision ? "default in single"
+                                                                    : "default in double";
+  return "given";
 }
 
 std::string shell_part(const Scene& scene) {
-  Rows rows{{"face", "kind", "cells", "sigma_max", "kappa_max", "alpha_max", "R(0)"}};
+  Rows rows{{"face", "kind", "cells", "why", "expected", "clearance", "nearest", "index", "R(0)"}};
   for (Side side : all_sides) {
+    const auto s = static_cast<std::size_t>(index_of(side));
     const Face& face = scene.problem.face(side);
-    const std::string path = fmt::format("shell.faces.{}.", name_of(side));
-    if (!absorbs(face.kind)) {
-      rows.push_back({std::string(name_of(side)), std::string(name_of(face.kind)), "0"});
+    if (!has_layer(face.kind)) {
+      const std::string order =
+          face.kind == FaceKind::one_way ? fmt::format("order {}", face.one_way_order) : "";
+      rows.push_back({std::string(name_of(side)), std::string(name_of(face.kind)), "0", order});
       continue;
     }
-    rows.push_back({std::string(name_of(side)), std::string(name_of(face.kind)),
-                    fmt::format("{}", face.layer.cells()), used_value(scene, path + "sigma_max"),
-                    used_value(scene, path + "kappa_max"), used_value(scene, path + "alpha_max"),
-                    fmt::format("{:.1f} dB", continuum_reflection_db(scene.problem, side))});
+    const FaceDesign& design = scene.designs[s];
+    std::vector<std::string> row{std::string(name_of(side)), std::string(name_of(face.kind)),
+                                 fmt::format("{}", face.cells()), reason_text(scene, side)};
+    if (design.inputs) {
+      const std::string& nearest = scene.surroundings.faces[s].nearest;
+      row.push_back(fmt::format("{:.1f} dB", design.figures->mean_db));
+      row.push_back(format_number(design.inputs->clearance_cells, 4));
+      row.push_back(nearest.empty() ? "-" : nearest);
+      row.push_back(format_number(design.inputs->frequencies.front().index, 4));
+    } else {
+      row.insert(row.end(), 4, "-");
+    }
+    row.push_back(design.origin == FaceDesign::Origin::polynomial
+                      ? fmt::format("{:.1f} dB", continuum_reflection_db(scene.problem, side))
+                      : "-");
+    rows.push_back(std::move(row));
   }
-  return "Shell (R(0): continuum, normal incidence, in the background; the lattice reflects more)\n" +
+  return fmt::format(
+             "Shell (expected: mean over near fields, errors in time within about {:.0f} dB of it; clearance "
+             "in "
+             "cells\nto the nearest object or dipole; R(0): continuum, normal incidence, in the background. "
+             "What "
+             "the lattice\nreflects: wanewall shell predict)\n",
+             design_margin_db) +
          aligned(rows);
 }
 
@@ -268,13 +295,15 @@ std::string values_part(const Scene& scene) {
 }  // namespace
 
 double continuum_reflection_db(const Problem& problem, Side side) {
-  const LayerTable& layer = problem.face(side).layer;
+  const Face& face = problem.face(side);
+  const LayerTable& layer = face.layer;
   const Medium& background = problem.media[static_cast<std::size_t>(problem.background)];
   const double index = std::sqrt(background.permittivity_rel * background.permeability_rel);
   const double cell_m = problem.lattice.along(axis_of(side)).smallest_cell_m();
   // Simpson's rule over each cell; the table ends half a cell before the outer wall, where the value is
   // carried on by the cubic through the last samples.
   double integral = 0.0;
+  for (const double sigma : face.moebius.sigma_s_per_m) integral += sigma * cell_m;
   const int n = layer.cells();
   const auto e = [&](int d) { return layer.sigma_e_s_per_m[static_cast<std::size_t>(d)]; };
   const auto h = [&](int d) { return layer.sigma_h_s_per_m[static_cast<std::size_t>(d)]; };

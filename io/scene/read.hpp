@@ -12,10 +12,18 @@ namespace wanewall::scene {
 void read_head(Cursor& root, Scene& scene);
 /// Media and the background. Media keep their order in the file; vacuum comes first.
 void read_media(Cursor& root, Scene& scene);
-/// Kinds of the six faces and the lattice: mesh lines, shell cells, periodic axes, time step.
-void read_lattice(Cursor& root, Scene& scene);
-/// The tables of the absorbing faces; needs the lattice and the background.
-void read_layers(Cursor& root, Scene& scene);
+/// Kinds of the six faces, and that no face says what its kind does not take.
+void read_kinds(Cursor& root, Scene& scene);
+/// The lattice of the clear volume without its shell: mesh lines, periodic axes, time step. Returns the cell.
+/// Needs the kinds.
+Vec3 read_clear_lattice(Cursor& root, Scene& scene);
+/// The tables of the absorbing faces, designed where the scene does not say them; needs everything that
+/// stands in the clear volume, and the stop rule.
+void read_layers(Cursor& root, Reading& reading, Scene& scene);
+/// Grows the lattice, and what counts its nodes, by the cells of the layers.
+void add_shell(Cursor& root, Scene& scene, const Vec3& cell_m);
+/// The block of one face, with every_face under it.
+Cursor face_block(Cursor& root, Side side);
 void read_objects(Cursor& root, Scene& scene);
 /// Needs the lattice and the objects.
 void read_illumination(Cursor& root, Reading& reading, Scene& scene);

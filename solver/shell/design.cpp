@@ -78,6 +78,35 @@ double largest_index(const DesignInputs& inputs) {
   return n;
 }
 
+/// About what one more cell gains; a first guess only.
+constexpr double db_per_cell = 12.0;
+
+template <class Design>
+auto fewest(const Design& design, double goal_db, int most) {
+  using Table = decltype(design(1).table);
+  const auto meets = [&](const Designed<Table>& d) {
+    return d.figures.mean_db <= goal_db - design_margin_db;
+  };
+  int cells = static_cast<int>(std::lround((design_margin_db - goal_db) / db_per_cell));
+  cells = std::clamp(cells, fewest_cells_for_goal, most);
+  DesignedForGoal<Table> best{design(cells), false};
+  best.is_met = meets(best.design);
+  if (best.is_met) {
+    while (cells > fewest_cells_for_goal) {
+      const Designed<Table> fewer = design(--cells);
+      if (!meets(fewer)) break;
+      best.design = fewer;
+    }
+    return best;
+  }
+  while (!best.is_met && cells < most) {
+    const Designed<Table> more = design(++cells);
+    best.is_met = meets(more);
+    if (more.figures.mean_db < best.design.figures.mean_db || best.is_met) best.design = more;
+  }
+  return best;
+}
+
 /// The measure for any table, through the reflection that the audit and the prediction use.
 template <class Table>
 DesignFigures figures_on_lattice(const Table& table, const DesignInputs& inputs, double spacing_m) {
@@ -114,6 +143,16 @@ Designed<LayerTable> design_cfs_pml(const DesignInputs& inputs, int cells, doubl
   const GradedObjective objective(near_field_points(inputs), cells, inputs.alpha_min);
   const std::vector<double> y = search(objective, graded_near_field);
   return {objective.table(y, spacing_m), figures(objective, y)};
+}
+
+DesignedForGoal<MoebiusTable> moebius_for_goal(const DesignInputs& inputs, double goal_db, int most,
+                                               double spacing_m) {
+  return fewest([&](int cells) { return design_moebius(inputs, cells, spacing_m); }, goal_db, most);
+}
+
+DesignedForGoal<LayerTable> cfs_pml_for_goal(const DesignInputs& inputs, double goal_db, int most,
+                                             double spacing_m) {
+  return fewest([&](int cells) { return design_cfs_pml(inputs, cells, spacing_m); }, goal_db, most);
 }
 
 Designed<MoebiusTable> design_moebius(const PlaneWaveRange& range, int cells, double spacing_m) {

@@ -29,10 +29,27 @@ struct Designed {
   DesignFigures figures;
 };
 
+/// How far below a goal the mean of a design must be for the goal to count as met [dB]: the spread named
+/// above.
+inline constexpr double design_margin_db = 10.0;
+
 /// Cells of `spacing_m` along the normal. 1 <= cells <= most_designed_cells, else std::invalid_argument.
 Designed<MoebiusTable> design_moebius(const DesignInputs& inputs, int cells, double spacing_m);
 /// sigma, kappa >= 1 and alpha free at every E node and half node.
 Designed<LayerTable> design_cfs_pml(const DesignInputs& inputs, int cells, double spacing_m);
+
+/// The fewest cells, between `fewest_cells_for_goal` and `most`, whose mean is `design_margin_db` below the
+/// goal; `most` cells when none is. More cells never do worse, so the count is found by halving.
+inline constexpr int fewest_cells_for_goal = 3;
+template <class Table>
+struct DesignedForGoal {
+  Designed<Table> design;
+  bool is_met = false;
+};
+DesignedForGoal<MoebiusTable> moebius_for_goal(const DesignInputs& inputs, double goal_db, int most,
+                                               double spacing_m);
+DesignedForGoal<LayerTable> cfs_pml_for_goal(const DesignInputs& inputs, double goal_db, int most,
+                                             double spacing_m);
 
 /// For plane waves from 0 to an angle only, at wavelengths of `shortest_cells` to `longest_cells` cells: the
 /// smallest worst reflection, with alpha = 0. Such a table reflects waves that decay towards the face almost

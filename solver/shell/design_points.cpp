@@ -35,6 +35,11 @@ double design_clearance(double clearance_cells) {
   return std::min(0.5 * (clearance_cells + 1.0), thickest_clearance);
 }
 
+DesignInputs as_designed(DesignInputs inputs) {
+  inputs.clearance_cells = 2.0 * design_clearance(inputs.clearance_cells) - 1.0;
+  return inputs;
+}
+
 std::vector<DesignPoints> near_field_points(const DesignInputs& inputs) {
   const double h = design_clearance(inputs.clearance_cells), size = inputs.diagonal_cells;
   std::vector<DesignPoints> all;

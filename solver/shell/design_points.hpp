@@ -14,6 +14,7 @@ namespace wanewall {
 struct DesignFrequency {
   double wavelength_cells = 0.0;
   double index = 1.0;
+  bool operator==(const DesignFrequency&) const = default;
 };
 
 /// What a design must know of the scene, for one face.
@@ -23,6 +24,7 @@ struct DesignInputs {
   double clearance_cells = 3.0;   ///< from the face to the nearest source or object
   double alpha_min = 1e-3;        ///< smallest alpha eta0 d
   std::vector<DesignFrequency> frequencies;
+  bool operator==(const DesignInputs&) const = default;
 };
 
 /// The points of one frequency, as arrays.
@@ -51,5 +53,7 @@ std::vector<DesignPoints> plane_wave_points(double courant, double shortest_cell
 
 /// The effective clearance h above.
 double design_clearance(double clearance_cells);
+/// The inputs with a clearance that stands for all which a design cannot tell apart from it.
+DesignInputs as_designed(DesignInputs inputs);
 
 }  // namespace wanewall

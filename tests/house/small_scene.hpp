@@ -15,7 +15,7 @@ inline std::string small_scene(double end_ns, const std::string& peak = "1 V/m")
       "clear_volume: {{x: [-50 mm, 50 mm], y: [-50 mm, 50 mm], z: [-50 mm, 50 mm]}}\n"
       "mesh: {{cell: 5 mm}}\n"
       "illumination: {{plane_wave: {{from: {{theta: 0 deg}}, peak: {}}}}}\n"
-      "shell: {{every_face: {{cells: 3}}}}\n"
+      "shell: {{every_face: {{kind: cfs_pml, profile: polynomial, cells: 3}}}}\n"
       "stop: {{at: {} ns}}\n"
       "record:\n"
       "  planes: {{cut: {{y: 0 m, fields: [Ex], every: 1000 steps}}}}\n"

@@ -18,7 +18,7 @@ bool has(const std::string& text, const std::string& piece) {
   return text.find(piece) != std::string::npos;
 }
 
-const std::vector<std::string> commands{"check", "run", "tables", "probe", "compare", "speed"};
+const std::vector<std::string> commands{"check", "run", "tables", "probe", "compare", "shell", "speed"};
 
 }  // namespace
 
@@ -69,7 +69,8 @@ TEST_CASE("A wrong command line ends with code 2 and points to the help") {
                std::vector<std::string>{"run", "small.yaml", "--threads", "two"},
                std::vector<std::string>{"run", "small.yaml", "--schedule", "sideways"},
                std::vector<std::string>{"run", "small.yaml", "--record"}, std::vector<std::string>{"check"},
-               std::vector<std::string>{"tables"}, std::vector<std::string>{"probe"});
+               std::vector<std::string>{"tables"}, std::vector<std::string>{"probe"},
+               std::vector<std::string>{"shell"}, std::vector<std::string>{"shell", "predict"});
   CAPTURE(words);
   const Outcome outcome = run_program(words, folder.path());
   CHECK(outcome.exit_code == 2);

@@ -24,13 +24,17 @@ Scene good(const std::string& name) {
   return read_scene(folder + name);
 }
 
-/// A scene of 40^3 cells of 1 cm with room for more.
+const std::string graded = "every_face: {kind: cfs_pml, profile: polynomial}";
+
+/// A scene of 40^3 cells of 1 cm with room for more; its layers are polynomials of 10 cells unless it says
+/// otherwise.
 Scene plain(const std::string& more, const std::string& mesh = "{cell: 1 cm}") {
   return parse_scene(
       "band: [1 GHz, 2 GHz]\n"
       "clear_volume: {x: [-20 cm, 20 cm], y: [-20 cm, 20 cm], z: [-20 cm, 20 cm]}\n"
       "stop: {at: 20 ns}\nmesh: " +
-          mesh + "\n" + more,
+          mesh + "\n" + more +
+          (more.find("shell:") == std::string::npos ? "shell: {" + graded + "}\n" : std::string()),
       "plain.yaml", ".");
 }
 
@@ -127,11 +131,11 @@ TEST_CASE("A face's own reflection or sigma_max goes before that of every face")
   };
   const double for_50_db = -4.0 * std::log(std::pow(10.0, -50.0 / 20.0)) / (2.0 * eta0_ohm * 0.1);
   const std::string own_reflection =
-      "{goal: -20 dB, every_face: {sigma_max: 7 S/m}, faces: {x-: {reflection: -50 dB}}}";
+      "{goal: -20 dB, every_face: {kind: cfs_pml, sigma_max: 7 S/m}, faces: {x-: {reflection: -50 dB}}}";
   CHECK(sigma_max(own_reflection, Side::x_lo) == Approx(for_50_db));
   CHECK(sigma_max(own_reflection, Side::x_hi) == Approx(7.0));
   const std::string own_sigma =
-      "{goal: -20 dB, every_face: {reflection: -50 dB}, faces: {x-: {sigma_max: 7 S/m}}}";
+      "{goal: -20 dB, every_face: {kind: cfs_pml, reflection: -50 dB}, faces: {x-: {sigma_max: 7 S/m}}}";
   CHECK(sigma_max(own_sigma, Side::x_lo) == Approx(7.0));
   CHECK(sigma_max(own_sigma, Side::x_hi) == Approx(for_50_db));
 }
@@ -142,6 +146,99 @@ TEST_CASE("A layer without goal, reflection or sigma_max follows the rule for it
   const double sigma_max = 0.8 * 4.0 / (eta0_ohm * 0.01 * 1.5);
   CHECK(p.face(Side::x_lo).layer.sigma_e_s_per_m.back() == Approx(sigma_max * std::pow(0.9, 3.0)));
   CHECK(p.face(Side::x_lo).layer.alpha_e_s_per_m.front() == Approx(2.0 * pi * eps0_f_per_m * 1e9 / 5.0));
+}
+
+TEST_CASE("Layers without a word are moebius, 6 cells in single and 8 in double precision") {
+  for (const bool in_double : {false, true}) {
+    const Scene scene = parse_scene(
+        std::string(
+            "band: [1 GHz, 2 GHz]\nclear_volume: {x: [0 m, 20 cm], y: [0 m, 20 cm], z: [0 m, 20 cm]}\n"
+            "mesh: {cell: 1 cm}\nstop: {at: 5 ns}\n") +
+            (in_double ? "precision: double\n" : "") + wave_from_above,
+        "cube.yaml", ".");
+    const int cells = in_double ? 8 : 6;
+    for (Side side : all_sides) {
+      CHECK(scene.problem.face(side).kind == FaceKind::moebius);
+      CHECK(scene.problem.face(side).moebius.cells() == cells);
+      CHECK(scene.problem.lattice.shell(side) == cells);
+    }
+    CHECK(scene.problem.lattice.cells() == Index3{20 + 2 * cells, 20 + 2 * cells, 20 + 2 * cells});
+    // Surface 6 cells inside the clear volume, counted with the shell; the origin is the shell's first node.
+    CHECK(scene.problem.plane_wave->box_lo[1] == cells + 6);
+    CHECK(scene.problem.plane_wave->box_hi[1] == cells + 14);
+    CHECK(scene.problem.lattice.along(Axis::y).node_m(cells) == Approx(0.0).margin(1e-12));
+    CHECK(scene.designs[0].figures->mean_db < -70.0);
+  }
+}
+
+TEST_CASE("A goal gives each face the fewest cells that meet it, and more where an object is near") {
+  const auto scene_for = [](const std::string& goal) {
+    return parse_scene(
+        "band: [1 GHz, 2 GHz]\nclear_volume: {x: [0 m, 30 cm], y: [0 m, 20 cm], z: [0 m, 20 cm]}\n"
+        "mesh: {cell: 1 cm}\nprecision: double\nstop: {at: 5 ns}\n"
+        "media: {metal: {perfect_conductor: true}, wax: {permittivity: 4}}\n"
+        "objects:\n  - half_space: {medium: wax, below: {z: 8 cm}}\n"
+        "  - box: {medium: metal, from: [1 cm, 8 cm, 9 cm], to: [12 cm, 12 cm, 12 cm]}\n"
+        "illumination: {dipoles: [{electric: [0 A m, 0 A m, 1 A m], at: [15 cm, 10 cm, 15 cm]}], pulse: "
+        "{fits: "
+        "band}}\n"
+        "shell: {goal: " +
+            goal + "}\n",
+        "goal.yaml", ".");
+  };
+  const Scene weak = scene_for("-40 dB"), strong = scene_for("-70 dB");
+  for (Side side : all_sides) {
+    const auto s = static_cast<std::size_t>(index_of(side));
+    CHECK(weak.problem.face(side).cells() < strong.problem.face(side).cells());
+    REQUIRE(strong.designs[s].figures);
+    CHECK(strong.designs[s].figures->mean_db <= -80.0);
+    // One cell less does not do.
+    const DesignFigures fewer =
+        design_moebius(*strong.designs[s].inputs, strong.problem.face(side).cells() - 1, 0.01).figures;
+    CHECK(fewer.mean_db > -80.0);
+  }
+  const auto& faces = strong.surroundings.faces;
+  CHECK(faces[0].clearance_cells == Approx(1.0));
+  CHECK(faces[0].nearest == "objects[1] (box)");
+  // The wax runs through the sides and so does not stand in front of them; z- sees the box above it.
+  CHECK(faces[1].clearance_cells == Approx(15.0));
+  CHECK(faces[1].nearest == "dipoles[0]");
+  CHECK(faces[4].nearest == "objects[1] (box)");
+  CHECK(faces[4].clearance_cells == Approx(9.0));
+  CHECK(faces[5].clearance_cells == Approx(5.0));
+  // Media at the faces: vacuum and wax at the sides, wax below, vacuum above.
+  CHECK(faces[0].media == std::vector<int>{0, 2});
+  CHECK(faces[4].media == std::vector<int>{2});
+  CHECK(faces[5].media == std::vector<int>{0});
+  CHECK(strong.designs[4].inputs->frequencies.front().index == Approx(2.0));
+  CHECK(strong.designs[5].inputs->frequencies.front().index == Approx(1.0));
+  CHECK(warns(strong, "objects[1] (box) stands 1 cells from x-"));
+  // The pulse's top: 12 dB down at 2 GHz from a centre of 1.5 GHz, so 80 dB down sqrt(80/12) times as far
+  // out.
+  CHECK(strong.surroundings.top_frequency_hz == Approx(1.5e9 + 0.5e9 * std::sqrt(80.0 / 12.0)).epsilon(0.01));
+  CHECK(strong.surroundings.diagonal_m == Approx(std::sqrt(0.09 + 0.04 + 0.04)));
+  CHECK_FALSE(strong.surroundings.has_statics);
+}
+
+TEST_CASE("Listed tables, one-way walls and overrides are taken as they stand") {
+  const Scene scene = good("shell.yaml");
+  const Problem& p = scene.problem;
+  CHECK(p.face(Side::x_lo).moebius.kappa == std::vector<double>{5.0, 0.5, 0.1});
+  CHECK(p.face(Side::x_lo).moebius.sigma_s_per_m == std::vector<double>{0.1, 0.4, 2.0});
+  CHECK(p.face(Side::x_lo).moebius.alpha_s_per_m[2] == Approx(0.3));
+  CHECK(p.face(Side::x_hi).moebius.kappa == std::vector<double>{1.0, 1.0});
+  CHECK(p.face(Side::x_hi).moebius.alpha_s_per_m == std::vector<double>{0.0, 0.0});
+  CHECK(p.face(Side::y_lo).layer.kappa_h == std::vector<double>{1.0, 1.7, 3.0});
+  CHECK(p.face(Side::y_hi).layer.sigma_h_s_per_m[0] == Approx(0.05));
+  CHECK(p.face(Side::y_hi).layer.kappa_e == std::vector<double>{1.0, 1.0});
+  CHECK(p.face(Side::z_lo).one_way_order == 2);
+  CHECK(p.face(Side::z_hi).one_way_order == 1);
+  CHECK(p.lattice.cells() == Index3{25, 25, 20});
+  CHECK(scene.designs[0].inputs->clearance_cells == 4.0);
+  CHECK(scene.designs[0].inputs->diagonal_cells == Approx(30.0));
+  CHECK(scene.designs[0].inputs->frequencies.front().index == 1.5);
+  CHECK(scene.designs[0].inputs->frequencies.front().wavelength_cells == Approx(c0_m_per_s / 3e9 / 0.01));
+  CHECK(warns(scene, "x+ is not sure to meet the goal of -40.0 dB"));
 }
 
 TEST_CASE("A column of single cells between periodic faces is lit through one face") {
@@ -170,13 +267,13 @@ TEST_CASE("A column of single cells between periodic faces is lit through one fa
 TEST_CASE("A column between absorbing ends lets the wave in at one end and out at the other") {
   const std::string sides =
       "x-: {kind: periodic}, x+: {kind: periodic}, y-: {kind: periodic}, y+: {kind: periodic}";
-  const Problem down = plain(wave_from_above + "shell: {faces: {" + sides + "}}\n").problem;
+  const Problem down = plain(wave_from_above + "shell: {" + graded + ", faces: {" + sides + "}}\n").problem;
   CHECK(down.plane_wave->box_face == std::array<bool, 6>{false, false, false, false, false, true});
   CHECK(down.plane_wave->box_lo == Index3{0, 0, 10});
   CHECK(down.plane_wave->box_hi == Index3{40, 40, 44});
-  const Problem up =
-      plain("illumination: {plane_wave: {from: {theta: 180 deg}}}\nshell: {faces: {" + sides + "}}\n")
-          .problem;
+  const Problem up = plain("illumination: {plane_wave: {from: {theta: 180 deg}}}\nshell: {" + graded +
+                           ", faces: {" + sides + "}}\n")
+                         .problem;
   CHECK(up.plane_wave->box_face == std::array<bool, 6>{false, false, false, false, true, false});
   CHECK(up.plane_wave->box_lo == Index3{0, 0, 16});
   CHECK(up.plane_wave->box_hi == Index3{40, 40, 50});
@@ -185,7 +282,8 @@ TEST_CASE("A column between absorbing ends lets the wave in at one end and out a
 TEST_CASE("One periodic axis leaves the surface open only along it") {
   const Problem p = plain(
                         "illumination: {plane_wave: {from: {theta: 30 deg, phi: 90 deg}}}\n"
-                        "shell: {faces: {x-: {kind: periodic}, x+: {kind: periodic}}}\n")
+                        "shell: {" +
+                        graded + ", faces: {x-: {kind: periodic}, x+: {kind: periodic}}}\n")
                         .problem;
   CHECK(p.plane_wave->box_face == std::array<bool, 6>{false, false, true, true, true, true});
   CHECK(p.plane_wave->box_lo == Index3{0, 16, 16});
@@ -197,13 +295,15 @@ TEST_CASE("A wall straight ahead between periodic sides leaves the surface open 
       "x-: {kind: periodic}, x+: {kind: periodic}, y-: {kind: periodic}, y+: {kind: periodic}";
   for (const std::string kind : {"electric_wall", "magnetic_wall"}) {
     const Problem p =
-        plain(wave_from_above + "shell: {faces: {" + sides + ", z-: {kind: " + kind + "}}}\n").problem;
+        plain(wave_from_above + "shell: {" + graded + ", faces: {" + sides + ", z-: {kind: " + kind + "}}}\n")
+            .problem;
     CHECK(p.plane_wave->box_face == std::array<bool, 6>{false, false, false, false, false, true});
     CHECK(p.plane_wave->box_lo == Index3{0, 0, 0});
     CHECK(p.lattice.cells() == Index3{40, 40, 50});
   }
-  CHECK_THROWS_AS(plain(wave_from_above + "shell: {faces: {" + sides + ", z+: {kind: electric_wall}}}\n"),
-                  SceneError);
+  CHECK_THROWS_AS(
+      plain(wave_from_above + "shell: {" + graded + ", faces: {" + sides + ", z+: {kind: electric_wall}}}\n"),
+      SceneError);
 }
 
 TEST_CASE("Unequal cells, turned box, clamped positions, chosen audit") {
@@ -253,7 +353,7 @@ TEST_CASE("Lengths may miss whole cells by rounding and no more") {
   const auto lattice_of = [](const std::string& x) {
     return parse_scene("band: [1 GHz, 2 GHz]\nclear_volume: {x: " + x +
                            ", y: [0 cm, 20 cm], z: [0 cm, 20 cm]}\nstop: {at: 5 ns}\nmesh: {cell: 1 cm}\n" +
-                           "illumination: {plane_wave: {from: {theta: 0 deg}}}\n",
+                           "illumination: {plane_wave: {from: {theta: 0 deg}}}\nshell: {" + graded + "}\n",
                        "x", ".")
         .problem.lattice;
   };

@@ -32,15 +32,17 @@ TEST_CASE("The continuum reflection of a layer made for a goal is the goal") {
   for (const std::string order : {"1", "2", "3"}) {
     INFO(order);
     const Problem p =
-        cube(light + "shell: {goal: -80 dB, every_face: {cells: 12, order: " + order + "}}\n").problem;
+        cube(light + "shell: {goal: -80 dB, every_face: {kind: cfs_pml, cells: 12, order: " + order + "}}\n")
+            .problem;
     CHECK(scene::continuum_reflection_db(p, Side::x_lo) == Approx(-80.0).epsilon(1e-6));
   }
-  const Problem p = cube(light + "shell: {every_face: {reflection: -50 dB, order: 3.7}}\n").problem;
+  const Problem p =
+      cube(light + "shell: {every_face: {kind: cfs_pml, reflection: -50 dB, order: 3.7}}\n").problem;
   CHECK(scene::continuum_reflection_db(p, Side::z_hi) == Approx(-50.0).margin(0.05));
   // A denser background shortens the waves: the same layer absorbs n times as many decibels.
-  const Problem oil =
-      cube("media: {oil: {permittivity: 2.25}}\nbackground: oil\n" + light + "shell: {goal: -40 dB}\n")
-          .problem;
+  const Problem oil = cube("media: {oil: {permittivity: 2.25}}\nbackground: oil\n" + light +
+                           "shell: {goal: -40 dB, every_face: {kind: cfs_pml, profile: polynomial}}\n")
+                          .problem;
   CHECK(scene::continuum_reflection_db(oil, Side::x_lo) == Approx(-60.0).epsilon(1e-6));
 }
 
@@ -91,7 +93,9 @@ TEST_CASE("The report tells what will be built") {
       "  - sphere: {medium: glass, centre: [0 m, 0 m, 0 m], radius: 5 cm}\n"
       "  - box: {medium: steel, from: [-5 cm, -5 cm, 8 cm], to: [5 cm, 5 cm, 9 cm]}\n" +
       light +
-      "shell: {goal: -60 dB, faces: {x-: {kind: matched_slab, cells: 12}}}\n"
+      "shell: {goal: -60 dB, every_face: {kind: cfs_pml, profile: polynomial}, faces: {x-: {kind: "
+      "matched_slab, "
+      "cells: 12}, y+: {kind: moebius, cells: 10}}}\n"
       "record: {planes: {cut: {y: 0 m, every: 20 steps}}, shell_audit: {frequencies: 3, faces: [z+]}}\n");
   Footprint footprint;
   footprint.fields = 3e6;
