@@ -219,13 +219,10 @@ std::string shell_part(const Scene& scene) {
                       : "-");
     rows.push_back(std::move(row));
   }
-  return fmt::format(
-             "Shell (expected: mean over near fields, errors in time within about {:.0f} dB of it; clearance "
-             "in "
-             "cells\nto the nearest object or dipole; R(0): continuum, normal incidence, in the background. "
-             "What "
-             "the lattice\nreflects: wanewall shell predict)\n",
-             design_margin_db) +
+  return "Shell (expected: mean over near fields; errors in time are up to 10 dB above it, 15 dB below -100 "
+         "dB;\n"
+         "clearance in cells to the nearest object or dipole; R(0): continuum, normal incidence, in the\n"
+         "background. What the lattice reflects: wanewall shell predict)\n" +
          aligned(rows);
 }
 

@@ -276,7 +276,10 @@ void read_searched(Cursor& block, const Scene& scene, std::optional<double> goal
         read_cells(block, face.kind, in_single ? cells_in_single : cells_in_double, most_designed_cells);
   else
     // More cells than rounding lets work are wasted.
-    search.goal_db = in_single ? std::max(*goal_db, single_precision_floor_db + design_margin_db) : *goal_db;
+    search.goal_db =
+        in_single
+            ? std::max(*goal_db, single_precision_floor_db + design_margin_db(single_precision_floor_db))
+            : *goal_db;
   auto found = std::find_if(done.begin(), done.end(), [&](const Search& s) { return s.same_as(search); });
   if (found == done.end()) {
     search.carry_out();
@@ -309,7 +312,7 @@ void warn_of_design(Reading& reading, const Cursor& shell, const Scene& scene, S
   if (!design.figures) return;
   const Face& face = scene.problem.face(side);
   const double mean_db = design.figures->mean_db;
-  if (goal_db && mean_db > *goal_db - design_margin_db) {
+  if (goal_db && mean_db > *goal_db - design_margin_db(*goal_db)) {
     const bool floor =
         scene.problem.precision == Precision::single_precision && mean_db <= single_precision_floor_db;
     if (!floor)
@@ -317,8 +320,8 @@ void warn_of_design(Reading& reading, const Cursor& shell, const Scene& scene, S
           shell.place("goal"),
           fmt::format("{} is not sure to meet the goal of {:.1f} dB: {:.1f} dB is expected of its {} {} "
                       "cells, and {:.0f} dB of that may be missing; give it more cells{}",
-                      name_of(side), *goal_db, mean_db, face.cells(), name_of(face.kind), design_margin_db,
-                      face.kind == FaceKind::moebius ? "" : " or kind: moebius"));
+                      name_of(side), *goal_db, mean_db, face.cells(), name_of(face.kind),
+                      design_margin_db(*goal_db), face.kind == FaceKind::moebius ? "" : " or kind: moebius"));
   }
   const FaceSurroundings& near = scene.surroundings.faces[s];
   if (design.inputs && design.inputs->clearance_cells < thin_clearance_cells && !near.nearest.empty())

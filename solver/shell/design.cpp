@@ -85,9 +85,9 @@ template <class Design>
 auto fewest(const Design& design, double goal_db, int most) {
   using Table = decltype(design(1).table);
   const auto meets = [&](const Designed<Table>& d) {
-    return d.figures.mean_db <= goal_db - design_margin_db;
+    return d.figures.mean_db <= goal_db - design_margin_db(goal_db);
   };
-  int cells = static_cast<int>(std::lround((design_margin_db - goal_db) / db_per_cell));
+  int cells = static_cast<int>(std::lround((design_margin_db(goal_db) - goal_db) / db_per_cell));
   cells = std::clamp(cells, fewest_cells_for_goal, most);
   DesignedForGoal<Table> best{design(cells), false};
   best.is_met = meets(best.design);

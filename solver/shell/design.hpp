@@ -16,8 +16,9 @@ namespace wanewall {
 inline constexpr int most_designed_cells = 24;
 
 /// How well a table does on its points [dB]: the mean of w |R|, which is what a reflected near field collects
-/// relative to the wave that goes out, and the largest w |R|. In closed boxes with pulses the worst error in
-/// time, over the peak of the field there, has been within about 10 dB of the mean, mostly below it.
+/// relative to the wave that goes out, and the largest w |R|. At the worst probe of the box and the plate in
+/// cases/shell_benchmarks the error in time, over the field's peak there, was from 4 dB below the mean to 9
+/// dB above it down to -100 dB, and up to 15 dB above it at -147 dB.
 struct DesignFigures {
   double mean_db = 0.0;
   double worst_db = 0.0;
@@ -30,8 +31,10 @@ struct Designed {
 };
 
 /// How far below a goal the mean of a design must be for the goal to count as met [dB]: the spread named
-/// above.
-inline constexpr double design_margin_db = 10.0;
+/// above, 10 dB for goals down to -100 dB and 15 dB beyond.
+constexpr double design_margin_db(double goal_db) {
+  return goal_db < -100.0 ? 15.0 : 10.0;
+}
 
 /// Cells of `spacing_m` along the normal. 1 <= cells <= most_designed_cells, else std::invalid_argument.
 Designed<MoebiusTable> design_moebius(const DesignInputs& inputs, int cells, double spacing_m);

@@ -63,7 +63,7 @@ void check_gradient(const LayerObjective& objective) {
     for (double g : gradient) largest = std::max(largest, std::abs(g));
     REQUIRE(largest > 1e-3);
     for (std::size_t i = 0; i < y.size(); ++i) {
-      constexpr double step = 1e-4;
+      constexpr double step = 3e-5;
       std::vector<double> up = y, down = y;
       up[i] += step;
       down[i] -= step;
