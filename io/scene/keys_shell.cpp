@@ -120,7 +120,7 @@ const Block& shell_block() {
       "What ends the lattice.",
       {optional("goal", quantity(Family::level, {-300.0, 0.0, false, true}),
                 "What the shell should reflect at most. Designed layers get the fewest cells of "
-                "which 10 dB less is expected."),
+                "which 10 dB less is expected, 15 dB below -100 dB."),
        optional("design", block(design()), "What the layers are designed for."),
        optional("every_face", block(face()), "What all six faces have in common."),
        optional("faces", block(faces()), "Faces that differ.")},
