@@ -68,7 +68,6 @@ class Record {
   Provenance provenance;
   Lattice lattice;
   Precision precision = Precision::single_precision;
-  std::array<FaceKind, 6> face_kinds{};
   RunResult result;
   std::vector<SnapshotList> snapshots;
 

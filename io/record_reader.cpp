@@ -81,9 +81,29 @@ void read_mesh(const hdf5::File& file, Record& record) {
       group.refuse(fmt::format("its shell has {} cells on {}", cells, name_of(side)));
   }
   const std::vector<std::string> kinds = group.texts("faceKinds");
-  if (kinds.size() != record.face_kinds.size()) group.refuse("it does not name six face kinds");
-  for (std::size_t n = 0; n < kinds.size(); ++n) record.face_kinds[n] = layout::face_kind_of(kinds[n]);
+  if (kinds.size() != all_sides.size()) group.refuse("it does not name six face kinds");
+  for (std::size_t n = 0; n < kinds.size(); ++n)
+    record.result.audit.shell[n].kind = layout::face_kind_of(kinds[n]);
   record.precision = layout::precision_of(group.text("precision"));
+}
+
+void read_shell(const hdf5::File& file, Record& record) {
+  if (!file.has("shell")) return;  // layout 1 did not say what the layers were made of
+  const hdf5::Group shell = file.group("shell");
+  for (const Side side : all_sides) {
+    const hdf5::Group group = shell.group(std::string(name_of(side)));
+    Face& face = record.result.audit.shell[static_cast<std::size_t>(index_of(side))];
+    face.one_way_order = small_integer(group.integer("oneWayOrder"), group, "oneWayOrder");
+    if (group.names().empty()) continue;
+    std::size_t cells = 0;
+    layout::for_each_table(face,
+                           [&](const char* name, const auto&, const char*, std::vector<double>& values) {
+                             values = list_in<double>(group, name);
+                             if (cells == 0) cells = values.size();
+                             if (values.size() != cells) group.refuse("its tables differ in length");
+                           });
+    if (face.cells() != record.lattice.shell(side)) group.refuse("its tables do not fit the lattice");
+  }
 }
 
 void read_points(const hdf5::File& file, RunResult& result) {
@@ -117,7 +137,7 @@ AuditPlane read_audit_plane(const hdf5::Dataset& dataset, std::size_t n_frequenc
     dataset.refuse("its shape does not fit the frequencies");
   for (std::size_t n = 0; n < 2; ++n)
     plane.shape[n] = small_integer(static_cast<std::int64_t>(shape[n + 1]), dataset, "an extent");
-  if (audit_planes == AuditPlanes::load) plane.sums = dataset.read<std::complex<float>>();
+  if (audit_planes == AuditPlanes::load) plane.sums = dataset.read<std::complex<double>>();
   return plane;
 }
 
@@ -130,6 +150,10 @@ AuditFace read_audit_face(const hdf5::Group& group, const std::string& name, std
   face.permittivity_rel = group.number("permittivityRel");
   face.permeability_rel = group.number("permeabilityRel");
   face.conductivity_s_per_m = group.number("conductivitySPerM");
+  if (group.has_attribute("goesOnToWall")) {  // since layout 2
+    face.magnetic_conductivity_ohm_per_m = group.number("magneticConductivityOhmPerM");
+    face.goes_on_to_wall = group.integer("goesOnToWall") != 0;
+  }
   for (const std::string& plane : group.names())
     face.planes.push_back(read_audit_plane(group.dataset(plane), n_frequencies, audit_planes));
   return face;
@@ -149,6 +173,17 @@ void read_audit(const hdf5::File& file, AuditRecord& audit, AuditPlanes audit_pl
   for (const std::string& name : faces.names())
     audit.faces.push_back(
         read_audit_face(faces.group(name), name, audit.frequencies_hz.size(), audit_planes));
+  if (!group.has("profiles")) return;
+  const hdf5::Group profiles = group.group("profiles");
+  for (AuditFace& face : audit.faces) {
+    const std::string name(name_of(face.side));
+    if (!profiles.has(name)) continue;
+    const hdf5::Group profile = profiles.group(name);
+    layout::for_each_list(face.profile,
+                          [&](const char* list, const auto&, const char*, std::vector<double>& values) {
+                            values = list_in<double>(profile, list);
+                          });
+  }
 }
 
 void read_run(const hdf5::File& file, RunResult& result) {
@@ -259,6 +294,7 @@ Record::Record(const std::string& path, AuditPlanes audit_planes)
     require_record(file, path);
     read_scene(file, *this);
     read_mesh(file, *this);
+    read_shell(file, *this);
     read_points(file, result);
     read_energy(file, result);
     read_audit(file, result.audit, audit_planes);

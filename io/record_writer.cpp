@@ -73,6 +73,20 @@ void write_mesh(hdf5::File& file, const Problem& problem) {
   group.set_text("precision", layout::word_of(problem.precision));
 }
 
+void write_shell(hdf5::File& file, const Problem& problem) {
+  hdf5::Group shell = file.create_group("shell");
+  for (const Side side : all_sides) {
+    const Face& face = problem.face(side);
+    hdf5::Group group = shell.create_group(std::string(name_of(side)));
+    group.set_text("kind", layout::word_of(face.kind));
+    group.set_integer("oneWayOrder", face.one_way_order);
+    layout::for_each_table(face, [&](const char* name, const auto& dimension, const char* description,
+                                     const std::vector<double>& values) {
+      if (face.cells() > 0) put_list(group, name, values, dimension, description);
+    });
+  }
+}
+
 void write_points(hdf5::File& file, const std::vector<PointSeries>& points, double dt_s) {
   hdf5::Group group = file.create_group("points");
   for (const PointSeries& point : points) {
@@ -110,6 +124,8 @@ void write_audit_face(hdf5::Group& audit, const AuditFace& face, std::size_t n_f
   group.set_number("permittivityRel", face.permittivity_rel);
   group.set_number("permeabilityRel", face.permeability_rel);
   group.set_number("conductivitySPerM", face.conductivity_s_per_m);
+  group.set_number("magneticConductivityOhmPerM", face.magnetic_conductivity_ohm_per_m);
+  group.set_integer("goesOnToWall", face.goes_on_to_wall ? 1 : 0);
   for (const AuditPlane& plane : face.planes) {
     const hdf5::Shape shape{n_frequencies, static_cast<std::size_t>(plane.shape[0]),
                             static_cast<std::size_t>(plane.shape[1])};
@@ -134,6 +150,15 @@ void write_audit(hdf5::File& file, const AuditRecord& audit) {
            "|E| of the incident plane wave at its phase origin [V s/m]; empty without one");
   hdf5::Group faces = group.create_group("faces");
   for (const AuditFace& face : audit.faces) write_audit_face(faces, face, audit.frequencies_hz.size());
+  hdf5::Group profiles = group.create_group("profiles");
+  for (const AuditFace& face : audit.faces) {
+    if (face.profile.empty()) continue;
+    hdf5::Group profile = profiles.create_group(std::string(name_of(face.side)));
+    layout::for_each_list(face.profile, [&](const char* name, const auto& dimension, const char* description,
+                                            const std::vector<double>& values) {
+      put_list(profile, name, values, dimension, description);
+    });
+  }
 }
 
 void write_run(hdf5::File& file, const RunResult& result) {
@@ -204,6 +229,7 @@ RecordWriter::RecordWriter(const std::string& path, const Scene& scene) {
   file.set_integer("layoutVersion", layout::version);
   write_scene(file, scene);
   write_mesh(file, scene.problem);
+  write_shell(file, scene.problem);
 }
 
 RecordWriter::~RecordWriter() = default;

@@ -87,7 +87,7 @@ std::string method_text(const AuditReport& report) {
 }
 
 std::string face_heading(const Record& record, const FaceReport& face) {
-  const FaceKind kind = record.face_kinds[static_cast<std::size_t>(index_of(face.side))];
+  const FaceKind kind = record.result.audit.shell[static_cast<std::size_t>(index_of(face.side))].kind;
   std::string text = fmt::format("## Face {} ({}", name_of(face.side), name_of(kind));
   if (face.shell_cells > 0) text += fmt::format(", {} cells", face.shell_cells);
   text += ")\n\n";

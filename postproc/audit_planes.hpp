@@ -33,7 +33,7 @@ const AuditPlane* find_plane(const Lattice& lattice, const AuditFace& face, Comp
 /// The sums of one frequency as a matrix [first][second]. Throws std::invalid_argument when the plane's size
 /// is not that of the lattice.
 using PlaneMap =
-    Eigen::Map<const Eigen::Matrix<std::complex<float>, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>>;
+    Eigen::Map<const Eigen::Matrix<std::complex<double>, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>>;
 PlaneMap sums_at(const Lattice& lattice, const AuditFace& face, const AuditPlane& plane,
                  std::size_t frequency_index);
 

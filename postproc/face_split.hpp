@@ -10,12 +10,27 @@
 // t' = 1: |1 - t| = |2 sin(kz d/2)|, where a tapered basis counts cos(theta) as 0.2 or so at least, and 6 dB
 // on top.
 //
+// With the lattice's own modes (shell_modes.hpp) no taper comes before the split, and totals are taken over
+// the whole plane. Their floor's divisor is W d, which is that of a residue constant along the normal at
+// normal incidence: near cut-off the bare rule is 15 to 30 dB too large.
+//
+// On side faces of media layered along z, H_z (on half planes -1, 0, 1) and E_z (on planes 0, 1, 2) are
+// split; R of H_z is minus that of tangential E. Under the taper, which lies in one medium, a plane wave's K
+// x E = Omega mu H and K.E = 0 give the other tangential component,
+//   E_1 = (h K_n Omega mu H_z - K_1 K_z E_z)/(K_n^2 + K_1^2),   h = +1 on x faces, -1 on y faces.
+//
+// The expected reading is R(K_n) exp(-2 j k_n g d) a of every wave, g cells before the shell, with the
+// layer's own R at complex K_n, read the same way.
+//
 // Units: the sums of the audit are V s/m, so a power here is 1/2 Re(E x H*) in W s^2 = J/Hz; four times it is
 // the energy per hertz of a real signal's one-sided spectrum.
 #pragma once
 
 #include <Eigen/Core>
 #include <array>
+#include <complex>
+#include <functional>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -31,10 +46,19 @@ namespace wanewall {
 struct SplitPower {
   double outgoing = 0.0;
   double returned = 0.0;
-  double floor = 0.0;  ///< what `returned` could be by error alone, from the third plane, with its margin
+  double expected = 0.0;  ///< what `returned` should be by the layer's theory; 0 without one
+  double floor = 0.0;     ///< what `returned` could be by error alone, from the third plane, with its margin
   long waves = 0;
 
   SplitPower& operator+=(const SplitPower& other);
+};
+
+/// Field norms over the whole plane, side shells included, relative to the outgoing wave's.
+struct WholePlane {
+  double returned = 0.0;
+  double floor = 0.0;              ///< from the third plane, no margin
+  std::optional<double> expected;  ///< by the layer's theory
+  std::optional<double> closure;   ///< of returned minus expected
 };
 
 /// Angles of incidence theta = asin(K_t / Re W) from the face's normal, in equal bins from 0 to 90 degrees.
@@ -43,23 +67,31 @@ struct SplitPower {
 struct FaceSplit {
   std::array<std::vector<SplitPower>, 2> bins;  ///< [polarisation][bin]
   std::array<SplitPower, 2> totals;             ///< sums over the bins
+  std::optional<WholePlane> whole;              ///< where the basis is the lattice's own modes
+};
+
+/// The reflection that a face should have: R of tangential E at its layer's first node from K_n^2 [1/m^2],
+/// complex. Without a function nothing is expected.
+struct FaceTheory {
+  std::function<std::complex<double>(std::complex<double>)> reflection;
+  int cells_to_shell = 2;  ///< from plane 0
 };
 
 inline constexpr int default_angle_bins = 9;
 
-/// Why tangential E of this face cannot be split; empty when it can.
-std::string no_split_because(const Lattice& lattice, const AuditFace& face);
+/// Why this face cannot be split; empty when it can.
+std::string no_split_because(const Lattice& lattice, const AuditRecord& audit, const AuditFace& face);
 
-/// Tangential E on node planes 0, 1, 2 at one frequency, all stored samples [V s/m]:
-/// [component: first, second tangential axis][plane](first, second).
-using TangentialPlanes = std::array<std::array<Eigen::MatrixXcd, 3>, 2>;
+/// Three adjacent planes of the two components that are split, at one frequency, all stored samples:
+/// [component: see SplitFields][plane](first, second). V s/m, A s/m.
+using FacePlanes = std::array<std::array<Eigen::MatrixXcd, 3>, 2>;
 /// Throws std::invalid_argument when planes are missing or do not fit the lattice.
-TangentialPlanes tangential_planes(const Lattice& lattice, const AuditFace& face,
-                                   std::size_t frequency_index);
+FacePlanes face_planes(const Lattice& lattice, const AuditFace& face, std::size_t frequency_index);
 
 /// The split itself. Plane waves travelling closer to the face than sin(theta) = 0.9998 and evanescent ones
-/// are left out. spacing_m is that of the planes.
-FaceSplit split_planes(const TangentialPlanes& planes, double spacing_m, const LatticeMedium& medium,
-                       const WaveBasis& basis, int angle_bins = default_angle_bins);
+/// are left out of the bins. spacing_m is that of the planes.
+FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, const LatticeMedium& medium,
+                       const WaveBasis& basis, int angle_bins = default_angle_bins,
+                       const FaceTheory& theory = {});
 
 }  // namespace wanewall

@@ -17,19 +17,22 @@ namespace wanewall {
 /// A medium at one frequency, as the lattice sees it.
 struct LatticeMedium {
   std::complex<double> w2_per_m2;                                 ///< W^2
-  double omega_mu_ohm_per_m = 0.0;                                ///< Omega mu
+  std::complex<double> omega_mu_ohm_per_m;                        ///< Omega mu - j sigma_m cos(omega dt/2)
   std::complex<double> admittivity_s_per_m;                       ///< y
   double w_per_m() const { return std::sqrt(w2_per_m2).real(); }  ///< Re W
 };
 
-/// Relative permittivity and permeability >= 1, conductivity >= 0. Throws std::invalid_argument when the
+/// Relative permittivity and permeability >= 1, conductivities >= 0. Throws std::invalid_argument when the
 /// frequency is not between 0 and half a period per time step.
 LatticeMedium lattice_medium(double permittivity_rel, double permeability_rel, double conductivity_s_per_m,
-                             double frequency_hz, double dt_s);
+                             double frequency_hz, double dt_s, double magnetic_conductivity_ohm_per_m = 0.0);
 
-/// Normal wavenumber [rad/m] of the wave whose transverse second differences have the eigenvalue
-/// `transverse_per_m2` (-K_x^2 - K_y^2 for a plane wave): the root that decays outwards, Im < 0, and the one
-/// that travels outwards, Re > 0, when there is no decay.
+/// (2/d) asin(K_n d/2) [rad/m] of the wave with K_n^2 = `normal_k_squared_per_m2`: the root that decays
+/// outwards, Im < 0, and the one that travels outwards, Re > 0, when there is no decay.
+std::complex<double> outward_wavenumber(std::complex<double> normal_k_squared_per_m2, double spacing_m);
+
+/// The same for the wave whose transverse second differences have the eigenvalue `transverse_per_m2`
+/// (-K_x^2 - K_y^2 for a plane wave).
 std::complex<double> normal_wavenumber(const LatticeMedium& medium, std::complex<double> transverse_per_m2,
                                        double spacing_m);
 

@@ -10,6 +10,7 @@
 #include "geometry/constants.hpp"
 #include "postproc/audit_planes.hpp"
 #include "postproc/face_split.hpp"
+#include "postproc/face_theory.hpp"
 
 namespace wanewall {
 namespace {
@@ -30,6 +31,8 @@ AngleReading reading_of(const SplitPower& power, double face_outgoing) {
   reading.returned_w_s2 = power.returned;
   reading.share_db = face_outgoing > 0.0 ? db_of_power(power.outgoing / face_outgoing) : -infinity;
   reading.reflection = reflection_of(power.outgoing, power.returned, power.floor);
+  if (power.expected > 0.0 && power.outgoing > 0.0)
+    reading.expected_db = db_of_power(power.expected / power.outgoing);
   reading.waves = power.waves;
   reading.not_illuminated = reading.share_db < least_share_db;
   return reading;
@@ -37,8 +40,22 @@ AngleReading reading_of(const SplitPower& power, double face_outgoing) {
 
 AngleSum angle_sum(const SplitPower& power, double face_outgoing) {
   const AngleReading reading = reading_of(power, face_outgoing);
-  return {reading.outgoing_w_s2, reading.returned_w_s2, reading.share_db, reading.reflection,
-          reading.not_illuminated};
+  return {reading.outgoing_w_s2, reading.returned_w_s2,   reading.share_db,
+          reading.reflection,    reading.not_illuminated, reading.expected_db};
+}
+
+WholeReading whole_reading(const WholePlane& whole) {
+  WholeReading reading;
+  reading.reflection = reflection_of(1.0, whole.returned * whole.returned, whole.floor * whole.floor);
+  if (whole.expected) reading.expected_db = db_of_field(*whole.expected);
+  if (whole.closure) reading.closure_db = db_of_field(*whole.closure);
+  return reading;
+}
+
+// Plane waves over the periods of both axes are the lattice's own modes already.
+bool uses_modes(const Lattice& lattice, const AuditRecord& audit, const AuditFace& face) {
+  return modes_unfit_because(lattice, audit.shell, face).empty() &&
+         !(face.is_uniform && tapered_plane_wave_kind(lattice, face.side).is_exact);
 }
 
 // Distance that a wave travels along the normal from plane 0 to the outer wall [m].
@@ -49,9 +66,10 @@ double depth_m(const Lattice& lattice, const AuditFace& face) {
 }
 
 void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& face, std::size_t f,
-               const LatticeMedium& medium, const WaveBasis& basis, int angle_bins) {
-  const FaceSplit split = split_planes(tangential_planes(lattice, face, f), cell_outside_m(lattice, face, 0),
-                                       medium, basis, angle_bins);
+               const LatticeMedium& medium, const WaveBasis& basis, const FaceTheory& theory,
+               int angle_bins) {
+  const FaceSplit split = split_planes(face_planes(lattice, face, f), face.side,
+                                       cell_outside_m(lattice, face, 0), medium, basis, angle_bins, theory);
   SplitPower all = split.totals[0], near;
   all += split.totals[1];
   for (int bin = 0; bin < angle_bins; ++bin)
@@ -59,6 +77,7 @@ void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& fa
       for (const auto& bins : split.bins) near += bins[static_cast<std::size_t>(bin)];
   reading.total = angle_sum(all, all.outgoing);
   reading.near_normal = angle_sum(near, all.outgoing);
+  if (split.whole) reading.whole = whole_reading(*split.whole);
   double tapered_width_m = infinity;
   for (double width_m : basis.tapered_width_m)
     if (width_m > 0.0) tapered_width_m = std::min(tapered_width_m, width_m);
@@ -72,6 +91,10 @@ void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& fa
     row.hi_deg = 90.0 * (bin + 1) / angle_bins;
     const double middle_rad = pi / 360.0 * (row.lo_deg + row.hi_deg);
     row.walk_off = 2.0 * depth_m(lattice, face) * std::tan(middle_rad) > 0.5 * tapered_width_m;
+    if (theory.reflection) {
+      const double k_t = medium.w_per_m() * std::sin(middle_rad);
+      row.infinite_face_db = db_of_field(std::abs(theory.reflection(medium.w2_per_m2 - k_t * k_t)));
+    }
     for (Polarisation pol : both_polarisations)
       row.readings[index_of(pol)] =
           reading_of(split.bins[index_of(pol)][static_cast<std::size_t>(bin)], all.outgoing);
@@ -84,10 +107,12 @@ FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const Au
                       const std::vector<std::size_t>& frequencies) {
   FaceReport report;
   report.side = face.side;
-  report.not_split_because = no_split_because(lattice, face);
+  report.not_split_because = no_split_because(lattice, audit, face);
   report.permittivity_rel = face.permittivity_rel;
   report.permeability_rel = face.permeability_rel;
   report.conductivity_s_per_m = face.conductivity_s_per_m;
+  report.is_layered = !face.is_uniform && face.is_layered;
+  report.goes_on_to_wall = face.goes_on_to_wall;
   report.shell_cells = lattice.shell(face.side);
   report.plane_m = lattice.along(axis_of(face.side)).node_m(plane_zero(lattice, face));
   report.clear_area_m2 = clear_area_m2(lattice, face.side);
@@ -96,21 +121,92 @@ FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const Au
     report.readings.back().frequency_hz = audit.frequencies_hz.at(f);
   }
   if (report.not_split_because.empty() && !frequencies.empty()) {
-    const BasisKind kind = tapered_plane_wave_kind(lattice, face.side);
-    report.basis = kind.name;
-    report.basis_is_exact = kind.is_exact;
+    if (uses_modes(lattice, audit, face)) {
+      report.basis = "the lattice's own modes of the whole cross-section";
+      report.basis_is_exact = report.basis_is_modal = true;
+    } else {
+      const BasisKind kind = tapered_plane_wave_kind(lattice, face.side);
+      report.basis = kind.name;
+      report.basis_is_exact = kind.is_exact;
+      if (!kind.is_exact) report.not_separable_because = modes_unfit_because(lattice, audit.shell, face);
+    }
   }
   return report;
 }
 
+// The medium in which a face's angles are read.
+LatticeMedium reading_medium(const AuditFace& face, IndexRange window_along_z, double frequency_hz,
+                             double dt_s) {
+  if (face.is_uniform)
+    return lattice_medium(face.permittivity_rel, face.permeability_rel, face.conductivity_s_per_m,
+                          frequency_hz, dt_s, face.magnetic_conductivity_ohm_per_m);
+  const LayeredProfile& p = face.profile;
+  const auto at = static_cast<std::size_t>(window_along_z.begin);
+  return lattice_medium(p.permittivity_rel_half.at(at), p.permeability_rel_half.at(at),
+                        p.conductivity_s_per_m_half.at(at), frequency_hz, dt_s,
+                        p.magnetic_conductivity_ohm_per_m_half.at(at));
+}
+
 void fill_reading(FaceReading& reading, const AuditRecord& audit, const Lattice& lattice,
-                  const AuditFace& face, std::size_t f, bool with_split, int angle_bins) {
+                  const AuditFace& face, std::size_t f, const FaceReport& frame,
+                  const CrossSectionModes& modes, int angle_bins) {
   reading.net = net_power(lattice, face, f);
   reading.incident_w_s2 = incident_power_w_s2(lattice, audit, face, f);
-  if (!with_split) return;
-  const LatticeMedium medium = lattice_medium(face.permittivity_rel, face.permeability_rel,
-                                              face.conductivity_s_per_m, reading.frequency_hz, lattice.dt_s);
-  add_split(reading, lattice, face, f, medium, tapered_plane_waves(lattice, face.side, medium), angle_bins);
+  if (!frame.not_split_because.empty()) return;
+  const IndexRange window = reading_cells(lattice, face, Axis::z);
+  const LatticeMedium medium = reading_medium(face, window, reading.frequency_hz, lattice.dt_s);
+  const WaveBasis basis = frame.basis_is_modal ? modal_basis(lattice, face, modes, medium, window)
+                                               : tapered_plane_waves(lattice, face.side, medium);
+  const Face& layer = audit.shell[static_cast<std::size_t>(index_of(face.side))];
+  add_split(reading, lattice, face, f, medium, basis, face_theory(lattice, layer, face, reading.frequency_hz),
+            angle_bins);
+}
+
+/// Runs jobs 0 .. n - 1 on all threads. One job is computed by one thread from first to last, so that the
+/// number of threads changes no digit.
+template <class Job>
+void in_parallel(int n, const Job& job) {
+  std::exception_ptr failure;
+#pragma omp parallel for schedule(dynamic)
+  for (int i = 0; i < n; ++i) {
+    try {
+      job(i);
+    } catch (...) {
+#pragma omp critical(audit_report_failure)
+      failure = std::current_exception();
+    }
+  }
+  if (failure) std::rethrow_exception(failure);
+}
+
+CrossSectionModes cross_section_modes(const AuditRecord& audit, const Lattice& lattice,
+                                      const std::vector<const AuditFace*>& faces, double frequency_hz) {
+  std::array<bool, 3> nodes{}, halves{};
+  const LayeredProfile* profile = nullptr;
+  for (const AuditFace* face : faces) {
+    for (Axis a : axes_of(face->side).tangential) {
+      const auto at = static_cast<std::size_t>(index_of(a));
+      if (!face->is_uniform && a == Axis::z)
+        profile = &face->profile;
+      else
+        nodes[at] = halves[at] = true;
+    }
+  }
+  CrossSectionModes modes;
+  in_parallel(8, [&](int job) {
+    const bool on_halves = job % 2 == 1;
+    const auto at = static_cast<std::size_t>(job / 2);
+    const Axis a = at < 3 ? static_cast<Axis>(at) : Axis::z;
+    if (at < 3 ? !(on_halves ? halves : nodes)[at] : profile == nullptr) return;
+    const AxisDifferences d = axis_differences(lattice, audit.shell, a, frequency_hz);
+    if (at < 3)
+      (on_halves ? modes.halves : modes.nodes)[at] = on_halves ? half_modes(d) : node_modes(d);
+    else if (on_halves)
+      modes.layered_ez = layered_ez_modes(d, *profile, frequency_hz, lattice.dt_s);
+    else
+      modes.layered_hz = layered_hz_modes(d, *profile, frequency_hz, lattice.dt_s);
+  });
+  return modes;
 }
 
 }  // namespace
@@ -148,23 +244,19 @@ AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const
     faces.push_back(&face);
     report.faces.push_back(face_frame(audit, lattice, face, frequencies));
   }
-  // One reading is one piece of work, computed by one thread from first to last, so that the number of
-  // threads changes no digit.
-  const int n_jobs = static_cast<int>(faces.size() * frequencies.size());
-  std::exception_ptr failure;
-#pragma omp parallel for schedule(dynamic)
-  for (int job = 0; job < n_jobs; ++job) {
-    const std::size_t n = static_cast<std::size_t>(job) / frequencies.size();
-    const std::size_t m = static_cast<std::size_t>(job) % frequencies.size();
-    try {
-      fill_reading(report.faces[n].readings[m], audit, lattice, *faces[n], frequencies[m],
-                   report.faces[n].not_split_because.empty(), choice.angle_bins);
-    } catch (...) {
-#pragma omp critical(audit_report_failure)
-      failure = std::current_exception();
-    }
+  std::vector<const AuditFace*> modal;
+  for (std::size_t n = 0; n < faces.size(); ++n)
+    if (report.faces[n].basis_is_modal) modal.push_back(faces[n]);
+  // Frequency by frequency: the modes of many would not fit into memory together.
+  for (std::size_t m = 0; m < frequencies.size(); ++m) {
+    const CrossSectionModes modes =
+        cross_section_modes(audit, lattice, modal, audit.frequencies_hz.at(frequencies[m]));
+    in_parallel(static_cast<int>(faces.size()), [&](int job) {
+      const auto n = static_cast<std::size_t>(job);
+      fill_reading(report.faces[n].readings[m], audit, lattice, *faces[n], frequencies[m], report.faces[n],
+                   modes, choice.angle_bins);
+    });
   }
-  if (failure) std::rethrow_exception(failure);
   return report;
 }
 

@@ -39,6 +39,8 @@ struct AngleReading {
   long waves = 0;  ///< plane waves in the bin; 0: the bin is empty
   /// Outgoing share below -20 dB: what the bin holds is the skirts of other angles.
   bool not_illuminated = false;
+  /// What should be read by the layer's theory, through the same window; empty without a theory.
+  std::optional<double> expected_db;
 };
 
 /// The two readings are TE and TM, indexed by Polarisation.
@@ -49,6 +51,7 @@ struct AngleRow {
   /// side shell, that less returns than an infinite face would reflect. L: shortest tapered clear width, (g +
   /// N) d: from plane 0 to the outer wall.
   bool walk_off = false;
+  std::optional<double> infinite_face_db;  ///< the layer's theory at the bin's middle
 };
 
 /// What a face reads over a range of angles, both polarisations together.
@@ -57,7 +60,18 @@ struct AngleSum {
   double share_db = 0.0;  ///< of the face's outgoing power
   Reflection reflection;
   bool not_illuminated = false;
+  std::optional<double> expected_db;
 };
+
+/// A face as a whole, by norms of the fields over the whole plane with its side shells (face_split.hpp).
+struct WholeReading {
+  Reflection reflection;  ///< its floor is the three-plane floor
+  std::optional<double> expected_db;
+  std::optional<double> closure_db;  ///< what came back and is not expected, relative to what went out
+};
+
+/// Above this three-plane floor a modal split is not to be trusted far [dB].
+inline constexpr double floor_warning_db = -100.0;
 
 /// The range in which a tapered basis still reads well.
 inline constexpr double near_normal_deg = 40.0;
@@ -70,6 +84,7 @@ struct FaceReading {
   std::optional<double> incident_w_s2;
   /// Empty when the face is not split. Powers stand for the clear cross-section.
   std::vector<AngleRow> rows;
+  std::optional<WholeReading> whole;          ///< where the split is by the lattice's own modes
   AngleSum total;                             ///< all angles
   AngleSum near_normal;                       ///< bins up to near_normal_deg
   std::array<Reflection, 2> by_polarisation;  ///< all angles
@@ -80,6 +95,11 @@ struct FaceReport {
   std::string not_split_because;  ///< empty: the face is split
   std::string basis;              ///< the functions of the split
   bool basis_is_exact = false;
+  bool basis_is_modal = false;
+  /// Why the face is split under tapers and not by the lattice's own modes; empty where it is.
+  std::string not_separable_because;
+  bool is_layered = false;      ///< media change along z; the angles are read in the deepest of them
+  bool goes_on_to_wall = true;  ///< false: something else lies in the face's own shell
   double permittivity_rel = 1.0, permeability_rel = 1.0, conductivity_s_per_m = 0.0;
   int shell_cells = 0;
   double plane_m = 0.0;  ///< coordinate of node plane 0 along the normal

@@ -84,6 +84,13 @@ Eigen::ArrayXd flat_taper(const Eigen::ArrayXd& x_m, double width_m) {
   });
 }
 
+// Over the whole width; mean square 1 over the cells.
+Eigen::ArrayXd plain_hann_taper(const Eigen::ArrayXd& x_m, double width_m, int cells) {
+  const Eigen::ArrayXd w =
+      x_m.unaryExpr([=](double x) { return x > 0.0 && x < width_m ? sin2(pi * x / width_m) : 0.0; });
+  return w / std::sqrt(w.square().sum() / cells);
+}
+
 // Over the flat part of the other; mean square 1 over the clear cells.
 Eigen::ArrayXd hann_taper(const Eigen::ArrayXd& x_m, double width_m, int cells) {
   const double ramp_m = ramp_share * width_m;
@@ -135,7 +142,111 @@ AxisBasis axis_basis(const Lattice& lattice, Component c, Axis a, const WaveGrid
   return basis;
 }
 
+// The modes of one axis, and their plane waves under a Hann taper over the cells `window`, or over the
+// period.
+AxisBasis modal_axis_basis(const Lattice& lattice, Component c, Axis a, const AxisModes& modes,
+                           const WaveGrid& grid, IndexRange window) {
+  AxisBasis basis;
+  basis.indices = modes.indices;
+  basis.expand = modes.expand;
+  basis.eigenvalue_per_m2 = modes.eigenvalue_per_m2;
+  basis.modes = modes.modes;
+  const MeshLines& lines = lattice.along(a);
+  const double origin_m = lines.node_m(window.begin), width_m = lines.node_m(window.end) - origin_m;
+  Eigen::ArrayXd x_m(modes.indices.size());
+  for (int i = 0; i < modes.indices.size(); ++i)
+    x_m[i] = lattice.position_m(c, a, modes.indices.begin + i) - origin_m;
+  const Eigen::ArrayXd weight =
+      is_periodic(lattice, a)
+          ? Eigen::ArrayXd::Constant(x_m.size(), grid.spacing_m)
+          : Eigen::ArrayXd(grid.spacing_m * plain_hann_taper(x_m, width_m, window.size()));
+  basis.to_plane_waves = analysis(grid, x_m, weight) * modes.modes;
+  return basis;
+}
+
+bool cells_are_even(const Lattice& lattice, Axis a, IndexRange cells) {
+  const MeshLines& lines = lattice.along(a);
+  for (int i = cells.begin; i < cells.end; ++i)
+    if (std::abs(lines.cell_m(i) - lines.cell_m(cells.begin)) > 1e-9 * lines.cell_m(cells.begin))
+      return false;
+  return true;
+}
+
 }  // namespace
+
+std::string modes_unfit_because(const Lattice& lattice, const std::array<Face, 6>& shell,
+                                const AuditFace& face) {
+  if (!face.is_uniform && !face.is_layered) return "an object crosses the face's plane";
+  for (Axis a : axes_of(face.side).tangential)
+    if (const std::string unfit = no_modes_because(lattice, shell, a); !unfit.empty()) return unfit;
+  return {};
+}
+
+IndexRange reading_cells(const Lattice& lattice, const AuditFace& face, Axis axis) {
+  const IndexRange clear = lattice.clear_cells(axis);
+  if (face.is_uniform || axis != Axis::z) return clear;
+  const LayeredProfile& p = face.profile;
+  // A cell belongs to a run when its half node and both its nodes have the medium of the run's first cell.
+  const auto same = [&](int at, int from) {
+    const auto i = static_cast<std::size_t>(at), j = static_cast<std::size_t>(from);
+    const auto node_is = [&](std::size_t node) {
+      return p.permittivity_rel_node[node] == p.permittivity_rel_half[j] &&
+             p.conductivity_s_per_m_node[node] == p.conductivity_s_per_m_half[j] &&
+             p.permeability_rel_node[node] == p.permeability_rel_half[j] &&
+             p.magnetic_conductivity_ohm_per_m_node[node] == p.magnetic_conductivity_ohm_per_m_half[j];
+    };
+    return p.permittivity_rel_half[i] == p.permittivity_rel_half[j] &&
+           p.conductivity_s_per_m_half[i] == p.conductivity_s_per_m_half[j] &&
+           p.permeability_rel_half[i] == p.permeability_rel_half[j] &&
+           p.magnetic_conductivity_ohm_per_m_half[i] == p.magnetic_conductivity_ohm_per_m_half[j] &&
+           node_is(i) && node_is(i + 1);
+  };
+  IndexRange best{clear.begin, clear.begin};
+  for (int begin = clear.begin; begin < clear.end;) {
+    int end = begin;
+    while (end < clear.end && same(end, begin)) ++end;
+    if (end - begin > best.size()) best = {begin, end};
+    begin = std::max(end, begin + 1);
+  }
+  return best;
+}
+
+WaveBasis modal_basis(const Lattice& lattice, const AuditFace& face, const CrossSectionModes& modes,
+                      const LatticeMedium& medium, IndexRange window) {
+  const std::array<Axis, 2> axes = axes_of(face.side).tangential;
+  WaveBasis basis;
+  basis.per_area_per_m2 = 1.0;
+  const bool layered = !face.is_uniform;
+  if (layered) {
+    basis.fields = SplitFields::hz_and_ez;
+    basis.eigenvalues_hold_w2 = true;
+  }
+  for (std::size_t i : {0u, 1u}) {
+    const Axis a = axes[i];
+    const IndexRange cells = layered && a == Axis::z ? window : lattice.clear_cells(a);
+    const double w_per_m = medium.w_per_m(), spacing_m = lattice.along(a).cell_m(cells.begin);
+    WaveGrid grid = grid_along(lattice, a, w_per_m);
+    const bool readable = cells_are_even(lattice, a, cells) &&
+                          (is_periodic(lattice, a) || cells.size() >= fewest_tapered_cells);
+    grid.spacing_m = spacing_m;
+    if (!readable) grid.n_waves = 0;  // totals only
+    for (std::size_t c : {0u, 1u}) {
+      const Component component = layered ? (c == 0 ? Component::hz : Component::ez) : electric(axes[c]);
+      const auto at = static_cast<std::size_t>(index_of(a));
+      const std::optional<AxisModes>& found = layered && a == Axis::z
+                                                  ? (c == 0 ? modes.layered_hz : modes.layered_ez)
+                                              : is_half(component, a) ? modes.halves[at]
+                                                                      : modes.nodes[at];
+      basis.parts[c][i] = modal_axis_basis(lattice, component, a, found.value(), grid, cells);
+    }
+    basis.plane_wave_per_m[i].resize(grid.n_waves);
+    for (long p = 0; p < grid.n_waves; ++p) basis.plane_wave_per_m[i][p] = grid.lattice_k_per_m(p);
+    basis.per_area_per_m2 /= grid.period_m();
+    if (!is_periodic(lattice, a))
+      basis.tapered_width_m[i] = lattice.along(a).node_m(cells.end) - lattice.along(a).node_m(cells.begin);
+  }
+  return basis;
+}
 
 BasisKind tapered_plane_wave_kind(const Lattice& lattice, Side side) {
   const std::array<Axis, 2> axes = axes_of(side).tangential;

@@ -8,10 +8,13 @@
 
 #include <Eigen/Core>
 #include <array>
+#include <optional>
 #include <string>
 
 #include "geometry/lattice.hpp"
 #include "postproc/lattice_wave.hpp"
+#include "postproc/shell_modes.hpp"
+#include "solver/results.hpp"
 
 namespace wanewall {
 
@@ -23,9 +26,17 @@ struct AxisBasis {
   /// [plane wave][function]: the functions' plane waves under the taper. Empty where each function is a plane
   /// wave.
   Eigen::MatrixXcd to_plane_waves;
+  /// [index - indices.begin][function], the inverse of `expand`. Empty where the functions are not complete.
+  Eigen::MatrixXcd modes;
 };
 
+/// Which two components are split. Tangential E, in the order first, second tangential axis; or, on the side
+/// faces of media layered along z, H_z and E_z, which hold the whole field (shell_modes.hpp).
+enum class SplitFields { tangential_e, hz_and_ez };
+
 struct WaveBasis {
+  SplitFields fields = SplitFields::tangential_e;
+  bool eigenvalues_hold_w2 = false;  ///< K_n^2 is the sum of the two eigenvalues, without W^2
   /// [component][axis], both in the order first, second tangential axis.
   std::array<std::array<AxisBasis, 2>, 2> parts;
   /// K of the plane waves along each axis [rad/m], the same for both components.
@@ -38,8 +49,29 @@ struct WaveBasis {
   /// The floor's divisor counts cos(theta) as at least this (face_split.hpp); zero for exact functions.
   double least_cosine = 0.0;
 
-  bool is_exact() const { return tapered_width_m[0] == 0.0 && tapered_width_m[1] == 0.0; }
+  /// Whether the functions are the whole set of the lattice's own modes, shells included.
+  bool has_modes() const { return parts[0][0].modes.size() > 0; }
+  bool is_exact() const { return has_modes() || (tapered_width_m[0] == 0.0 && tapered_width_m[1] == 0.0); }
 };
+
+/// Whether the lattice's own modes of a face's cross-section can be found, and why not.
+std::string modes_unfit_because(const Lattice& lattice, const std::array<Face, 6>& shell,
+                                const AuditFace& face);
+
+/// The modes of all axes at one frequency; those that some face needs.
+struct CrossSectionModes {
+  std::array<std::optional<AxisModes>, 3> nodes, halves;  ///< by axis
+  std::optional<AxisModes> layered_hz, layered_ez;        ///< along z
+};
+
+/// The lattice's own modes. Angles are read under one Hann taper over the clear width, along z over `window`
+/// on faces of layered media. medium: that of the face, or of the window.
+WaveBasis modal_basis(const Lattice& lattice, const AuditFace& face, const CrossSectionModes& modes,
+                      const LatticeMedium& medium, IndexRange window);
+
+/// Cells along an axis under the taper of modal_basis(): the clear ones; along z on faces of layered media
+/// the longest run of them in one medium.
+IndexRange reading_cells(const Lattice& lattice, const AuditFace& face, Axis axis);
 
 /// A tapered axis must have at least this many clear cells.
 inline constexpr int fewest_tapered_cells = 8;

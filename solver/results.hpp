@@ -69,7 +69,17 @@ struct AuditPlane {
   int normal_index = 0;        ///< index of the component along the face's normal
   double normal_m = 0.0;       ///< and its coordinate
   std::array<int, 2> shape{};  ///< stored indices along the two tangential axes, in the order x, y, z
-  std::vector<std::complex<float>> sums;  ///< [frequency][first][second]; first and second start at index 0
+  std::vector<std::complex<double>> sums;  ///< [frequency][first][second]; first and second start at index 0
+};
+
+/// Media that depend on z only, as the update has them on the whole z axis, shell included. Node k and half
+/// node k + 1/2 have index k. E across z and H along z live on nodes, E along z and H across z on half nodes.
+struct LayeredProfile {
+  std::vector<double> permittivity_rel_node, conductivity_s_per_m_node;
+  std::vector<double> permittivity_rel_half, conductivity_s_per_m_half;
+  std::vector<double> permeability_rel_node, magnetic_conductivity_ohm_per_m_node;
+  std::vector<double> permeability_rel_half, magnetic_conductivity_ohm_per_m_half;
+  bool empty() const { return permittivity_rel_node.empty(); }
 };
 
 /// Planes of one face, over the whole cross-section out to the outer walls. "Plane m" counts outwards:
@@ -77,15 +87,21 @@ struct AuditPlane {
 /// plane m.
 struct AuditFace {
   Side side = Side::x_lo;
-  /// True when the face's cross-section lies in one medium (split on tangential E). False on side faces of
-  /// scenes layered along z (E_z and H_z recorded instead) and where objects cross the plane.
+  /// True when the whole cross-section at the planes, side shells included, lies in one medium (split on
+  /// tangential E). False on side faces of scenes layered along z (E_z and H_z recorded instead) and where
+  /// objects cross the planes.
   bool is_uniform = true;
-  /// True when media at the face depend on z only.
+  /// True when media at the planes depend on z only.
   bool is_layered = false;
+  /// True when the media of the planes go on to the outer wall. An object inside the face's own shell makes
+  /// it false; the split does not need it, the expected reading does.
+  bool goes_on_to_wall = true;
   /// Medium at the middle of the face's plane.
   double permittivity_rel = 1.0;
   double permeability_rel = 1.0;
   double conductivity_s_per_m = 0.0;
+  double magnetic_conductivity_ohm_per_m = 0.0;
+  LayeredProfile profile;  ///< of a layered face; empty where the face is uniform or crossed
   /// Uniform: both tangential E on planes 0, 1, 2 and both tangential H on half plane 0.
   /// Layered: E_z on planes 0, 1, 2 and H_z on half planes -1, 0, 1; the other tangential E on plane 0, the
   /// other tangential H on half plane 0. In both cases plane 0 and half plane 0 hold all four tangential
@@ -97,6 +113,7 @@ struct AuditRecord {
   std::vector<double> frequencies_hz;
   int sample_every = 1;  ///< Q, steps
   std::vector<AuditFace> faces;
+  std::array<Face, 6> shell;  ///< what ended the lattice on every side, indexed by Side
   /// Incident plane wave's spectrum at its phase origin, |E| [V s/m], one per frequency; empty without one.
   std::vector<std::complex<double>> incident_v_s_per_m;
   Vec3 incident_direction{};  ///< unit vector of propagation

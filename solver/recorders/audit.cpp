@@ -38,37 +38,103 @@ AuditPlane make_plane(const Lattice& lattice, Side side, Component c, int m) {
   return plane;
 }
 
-/// Does the paint of tangential E on planes 0..2 equal that at the middle of the plane (uniform), or that of
-/// the same z (layered)? Looks at the clear cross-section without its rim, where walls have their own rules.
-void classify(const Problem& problem, const Painter& painter, Side side, AuditFace& face) {
-  const Lattice& lattice = problem.lattice;
-  const Axis normal = axis_of(side);
-  const auto tangential = tangential_axes(side);
-  face.is_uniform = face.is_layered = true;
-  std::vector<Paint> row, reference_row;
-  for (Axis along : tangential) {
-    const Component c = electric(along);
-    const int node_0 = plane_node(lattice, side, 0), node_2 = plane_node(lattice, side, 2);
-    const auto range = [&](Axis a) {
-      if (a == normal) return IndexRange{std::min(node_0, node_2), std::max(node_0, node_2) + 1};
-      const IndexRange clear = lattice.clear(c, a);
-      return is_half(c, a) || clear.size() < 3 ? clear : IndexRange{clear.begin + 1, clear.end - 1};
+/// Looks at what the update is made of on a face's planes and beyond them, over the whole cross-section.
+/// Nodes on the outer walls are left out: walls have their own rules.
+class CrossSection {
+ public:
+  CrossSection(const Problem& problem, const Painter& painter, Side side)
+      : lattice_(problem.lattice), painter_(painter), side_(side) {
+    // E and H at the planes: nodes 0..2 and half planes -1..1.
+    for (Component c : all_components) {
+      const IndexRange near = planes(c), x = range(c, Axis::x, near), y = range(c, Axis::y, near);
+      painter_.row(c, x.begin, y.begin, range(c, Axis::z, near), reference_[at(c)]);
+    }
+  }
+
+  bool is_uniform() const {
+    for (Component c : all_components)
+      for (const Paint& paint : reference_[at(c)])
+        if (!(paint == any(c)) || paint.perfect) return false;
+    return agrees(false, true);
+  }
+  bool is_layered() const {
+    if (axis_of(side_) == Axis::z) return is_uniform();
+    for (Component c : all_components)
+      for (const Paint& paint : reference_[at(c)])
+        if (paint.perfect) return false;
+    return reference_[at(Component::ex)] == reference_[at(Component::ey)] &&
+           reference_[at(Component::hx)] == reference_[at(Component::hy)] && agrees(false, false);
+  }
+  bool goes_on_to_wall(bool uniform) const { return agrees(true, uniform); }
+
+  const Paint& any(Component c) const {
+    const auto& row = reference_[at(is_electric(c) ? Component::ex : Component::hx)];
+    return row[row.size() / 2];
+  }
+  /// Whole-axis profile: the outer nodes, which do not move, take after their neighbours.
+  LayeredProfile profile() const {
+    LayeredProfile p;
+    const auto fill = [&](Component c, std::vector<double>& relative, std::vector<double>& loss) {
+      std::vector<Paint> row = reference_[at(c)];
+      if (!is_half(c, Axis::z)) {
+        row.insert(row.begin(), row.front());
+        row.push_back(row.back());
+      }
+      for (const Paint& paint : row) {
+        relative.push_back(paint.relative);
+        loss.push_back(paint.loss);
+      }
     };
-    const IndexRange x = range(Axis::x), y = range(Axis::y), z = range(Axis::z);
-    for (int i = x.begin; i < x.end; ++i) {
-      for (int j = y.begin; j < y.end; ++j) {
-        painter.row(c, i, j, z, row);
-        if (i == x.begin && j == y.begin) reference_row = row;
-        const Paint& middle = reference_row[reference_row.size() / 2];
-        for (std::size_t k = 0; k < row.size(); ++k) {
-          face.is_uniform = face.is_uniform && row[k] == middle;
-          face.is_layered = face.is_layered && row[k] == reference_row[k];
+    fill(Component::ex, p.permittivity_rel_node, p.conductivity_s_per_m_node);
+    fill(Component::ez, p.permittivity_rel_half, p.conductivity_s_per_m_half);
+    fill(Component::hz, p.permeability_rel_node, p.magnetic_conductivity_ohm_per_m_node);
+    fill(Component::hx, p.permeability_rel_half, p.magnetic_conductivity_ohm_per_m_half);
+    return p;
+  }
+
+ private:
+  static std::size_t at(Component c) { return static_cast<std::size_t>(index_of(c)); }
+
+  IndexRange planes(Component c) const {
+    const bool half = is_half(c, axis_of(side_));
+    const int a = half ? half_plane_index(lattice_, side_, -1) : plane_node(lattice_, side_, 0);
+    const int b = half ? half_plane_index(lattice_, side_, 1) : plane_node(lattice_, side_, 2);
+    return {std::min(a, b), std::max(a, b) + 1};
+  }
+  IndexRange beyond(Component c) const {
+    const Axis normal = axis_of(side_);
+    const IndexRange near = planes(c);
+    const int wall = is_half(c, normal) ? 0 : 1;  // the wall's own nodes are left out
+    if (is_high(side_)) return {near.end, lattice_.stored(c, normal).end - wall};
+    return {wall, near.begin};
+  }
+  IndexRange range(Component c, Axis a, IndexRange along_normal) const {
+    if (a == axis_of(side_)) return along_normal;
+    const IndexRange all = lattice_.stored(c, a);
+    return is_half(c, a) || all.size() < 3 ? all : IndexRange{all.begin + 1, all.end - 1};
+  }
+  bool agrees(bool outside, bool uniform) const {
+    std::vector<Paint> row;
+    for (Component c : all_components) {
+      const IndexRange along_normal = outside ? beyond(c) : planes(c);
+      const IndexRange x = range(c, Axis::x, along_normal), y = range(c, Axis::y, along_normal);
+      const IndexRange z = range(c, Axis::z, along_normal);
+      for (int i = x.begin; i < x.end; ++i) {
+        for (int j = y.begin; j < y.end; ++j) {
+          painter_.row(c, i, j, z, row);
+          for (std::size_t k = 0; k < row.size(); ++k)
+            if (!(row[k] == (uniform ? any(c) : reference_[at(c)][k]))) return false;
         }
       }
     }
+    return true;
   }
-  if (normal == Axis::z) face.is_layered = face.is_uniform;
-}
+
+  const Lattice& lattice_;
+  const Painter& painter_;
+  Side side_;
+  std::array<std::vector<Paint>, 6> reference_;
+};
 
 }  // namespace
 
@@ -96,20 +162,33 @@ AuditFace audit_face(const Problem& problem, const Painter& painter, Side side) 
         "the face out of the audit");
   AuditFace face;
   face.side = side;
-  classify(problem, painter, side, face);
-  const auto [first, second] = tangential_axes(side);
-  Vec3 middle{};
-  for (Axis a : all_axes) {
-    const IndexRange clear = lattice.clear_cells(a);
-    middle[static_cast<std::size_t>(index_of(a))] =
-        0.5 * (lattice.along(a).node_m(clear.begin) + lattice.along(a).node_m(clear.end));
+  const CrossSection section(problem, painter, side);
+  face.is_uniform = section.is_uniform();
+  face.is_layered = face.is_uniform || section.is_layered();
+  face.goes_on_to_wall = (face.is_uniform || face.is_layered) && section.goes_on_to_wall(face.is_uniform);
+  if (face.is_uniform) {
+    const Paint &e = section.any(Component::ex), &h = section.any(Component::hx);
+    face.permittivity_rel = e.relative;
+    face.conductivity_s_per_m = e.loss;
+    face.permeability_rel = h.relative;
+    face.magnetic_conductivity_ohm_per_m = h.loss;
+  } else {
+    Vec3 middle{};
+    for (Axis a : all_axes) {
+      const IndexRange clear = lattice.clear_cells(a);
+      middle[static_cast<std::size_t>(index_of(a))] =
+          0.5 * (lattice.along(a).node_m(clear.begin) + lattice.along(a).node_m(clear.end));
+    }
+    middle[static_cast<std::size_t>(index_of(normal))] =
+        lattice.along(normal).node_m(plane_node(lattice, side, 0));
+    const Medium& medium = problem.media[static_cast<std::size_t>(painter.medium_at(middle))];
+    face.permittivity_rel = medium.permittivity_rel;
+    face.permeability_rel = medium.permeability_rel;
+    face.conductivity_s_per_m = medium.conductivity_s_per_m;
+    face.magnetic_conductivity_ohm_per_m = medium.magnetic_conductivity_ohm_per_m;
+    if (face.is_layered) face.profile = section.profile();
   }
-  middle[static_cast<std::size_t>(index_of(normal))] =
-      lattice.along(normal).node_m(plane_node(lattice, side, 0));
-  const Medium& medium = problem.media[static_cast<std::size_t>(painter.medium_at(middle))];
-  face.permittivity_rel = medium.permittivity_rel;
-  face.permeability_rel = medium.permeability_rel;
-  face.conductivity_s_per_m = medium.conductivity_s_per_m;
+  const auto [first, second] = tangential_axes(side);
 
   if (face.is_layered && !face.is_uniform) {
     const Axis other = normal == Axis::x ? Axis::y : Axis::x;
@@ -132,6 +211,7 @@ AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captu
   record_.frequencies_hz = request.frequencies_hz;
   if (request.frequencies_hz.empty()) return;
   record_.sample_every = audit_sample_every(problem);
+  record_.shell = problem.faces;
   const Painter painter(problem.lattice, problem.media, problem.objects, problem.background);
   for (Side side : all_sides) {
     if (!request.faces[static_cast<std::size_t>(index_of(side))]) continue;
@@ -216,8 +296,7 @@ AuditRecord AuditRecorder<Real>::finish() {
     const double unit = record_.sample_every * dt_s_ * (is_electric(out.component) ? 1.0 : 1.0 / eta0_ohm);
     out.sums.resize(plane.sum_real.size());
     for (std::size_t n = 0; n < out.sums.size(); ++n)
-      out.sums[n] = {static_cast<float>(unit * plane.sum_real[n]),
-                     static_cast<float>(unit * plane.sum_imag[n])};
+      out.sums[n] = {unit * plane.sum_real[n], unit * plane.sum_imag[n]};
     plane = Plane{};
   }
   planes_.clear();

@@ -32,7 +32,7 @@ TEST_CASE("A record gives back the scene, the mesh and the provenance", "[record
   CHECK(record.lattice.dt_s == scene.problem.lattice.dt_s);
   CHECK(record.precision == scene.problem.precision);
   for (const Side side : all_sides)
-    CHECK(record.face_kinds[static_cast<std::size_t>(index_of(side))] == scene.problem.face(side).kind);
+    CHECK(record.result.audit.shell[static_cast<std::size_t>(index_of(side))].kind == scene.problem.face(side).kind);
 
   const Provenance p = small_provenance();
   CHECK(record.provenance.program_version == p.program_version);

@@ -182,8 +182,8 @@ inline AuditFace audit_face(const TestFace& face, const WaveSum& waves) {
 }
 
 /// The same planes in double, for tests to rounding.
-inline TangentialPlanes planes_of(const TestFace& face, const WaveSum& waves) {
-  TangentialPlanes planes;
+inline FacePlanes planes_of(const TestFace& face, const WaveSum& waves) {
+  FacePlanes planes;
   for (std::size_t i : {0u, 1u})
     for (int m = 0; m < 3; ++m)
       planes[i][static_cast<std::size_t>(m)] =
@@ -199,7 +199,7 @@ inline LatticeMedium medium_of(const TestFace& face) {
 inline FaceSplit split_of(const TestFace& face, const WaveSum& waves) {
   Eigen::setNbThreads(1);  // as in the program, where each thread has a split of its own
   const WaveBasis basis = tapered_plane_waves(face.lattice(), face.side, medium_of(face));
-  return split_planes(planes_of(face, waves), face.spacing_m[2], medium_of(face), basis);
+  return split_planes(planes_of(face, waves), face.side, face.spacing_m[2], medium_of(face), basis);
 }
 
 /// One plane wave at an angle from the normal, turned from u towards v, with tangential amplitudes te and tm

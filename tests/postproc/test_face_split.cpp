@@ -193,9 +193,9 @@ TEST_CASE("The basis can be replaced", "[face_split]") {
     axis.expand = Matrix(mix * axis.expand);
     axis.to_plane_waves = Matrix(axis.to_plane_waves * mix.inverse());
   }
-  const TangentialPlanes planes = planes_of(face, waves);
-  const FaceSplit a = split_planes(planes, face.spacing_m[2], medium, plane_waves);
-  const FaceSplit b = split_planes(planes, face.spacing_m[2], medium, standing);
+  const FacePlanes planes = planes_of(face, waves);
+  const FaceSplit a = split_planes(planes, face.side, face.spacing_m[2], medium, plane_waves);
+  const FaceSplit b = split_planes(planes, face.side, face.spacing_m[2], medium, standing);
   for (std::size_t pol : {0u, 1u}) {
     for (std::size_t bin = 0; bin < 9; ++bin) {
       CHECK(b.bins[pol][bin].outgoing == Approx(a.bins[pol][bin].outgoing).epsilon(1e-10));
@@ -208,27 +208,27 @@ TEST_CASE("The basis can be replaced", "[face_split]") {
 TEST_CASE("Faces that cannot be split say why", "[face_split]") {
   TestFace face;
   AuditFace audit = audit_face(face, one_wave(face, 0.1, 0.0, 1.0, 1.0));
-  CHECK(no_split_because(face.lattice(), audit).empty());
+  CHECK(no_split_because(face.lattice(), AuditRecord{}, audit).empty());
 
   audit.is_uniform = false;
   audit.is_layered = true;
-  CHECK_THAT(no_split_because(face.lattice(), audit), Catch::Contains("layers"));
+  CHECK_THAT(no_split_because(face.lattice(), AuditRecord{}, audit), Catch::Contains("layers"));
   audit.is_layered = false;
-  CHECK_THAT(no_split_because(face.lattice(), audit), Catch::Contains("object"));
+  CHECK_THAT(no_split_because(face.lattice(), AuditRecord{}, audit), Catch::Contains("object"));
   audit.is_uniform = true;
 
   Lattice narrow = face.lattice();
   narrow.shell_cells[static_cast<std::size_t>(index_of(Side::x_lo))] = 30;
-  CHECK_THAT(no_split_because(narrow, audit), Catch::Contains("clear cells along x"));
+  CHECK_THAT(no_split_because(narrow, AuditRecord{}, audit), Catch::Contains("clear cells along x"));
   CHECK_THROWS_AS(tapered_plane_waves(narrow, audit.side, medium_of(face)), std::invalid_argument);
 
   Lattice graded = face.lattice();
   std::vector<double> nodes = graded.along(Axis::y).all_m();
   nodes.back() += 0.001;
   graded.lines[1] = MeshLines(nodes);
-  CHECK_THAT(no_split_because(graded, audit), Catch::Contains("along y"));
+  CHECK_THAT(no_split_because(graded, AuditRecord{}, audit), Catch::Contains("along y"));
 
   AuditFace incomplete = audit;
   incomplete.planes.erase(incomplete.planes.begin());
-  CHECK_THROWS_AS(tangential_planes(face.lattice(), incomplete, 0), std::invalid_argument);
+  CHECK_THROWS_AS(face_planes(face.lattice(), incomplete, 0), std::invalid_argument);
 }

@@ -118,7 +118,7 @@ TEST_CASE("The second taper is worth 30 dB at small angles", "[face_split][floor
       }
     }
   }
-  const FaceSplit one = split_planes(planes_of(face, waves), face.spacing_m[2], medium, single);
+  const FaceSplit one = split_planes(planes_of(face, waves), face.side, face.spacing_m[2], medium, single);
   const std::array<double, 5> trial_db{-45.0, -33.0, -34.0, -34.0, -32.0};
   for (std::size_t bin = 0; bin < trial_db.size(); ++bin) {
     const auto error_db = [&](const FaceSplit& s) {
@@ -181,13 +181,13 @@ TEST_CASE("The third plane sees what is not a wave", "[face_split][floor]") {
   WaveSum wave = WaveSum::zero(k_u, k_v);
   wave.te_out(0, 0) = 0.9;
   wave.tm_out(0, 0) = 0.6;
-  TangentialPlanes planes = planes_of(face, wave);
+  FacePlanes planes = planes_of(face, wave);
   const double residue = 1e-3;
   for (auto& component : planes)
     for (auto& plane : component) plane.array() += residue;
   const LatticeMedium medium = medium_of(face);
   const WaveBasis basis = tapered_plane_waves(face.lattice(), face.side, medium);
-  const FaceSplit split = split_planes(planes, face.spacing_m[2], medium, basis);
+  const FaceSplit split = split_planes(planes, face.side, face.spacing_m[2], medium, basis);
   const SplitPower& normal = split.bins[0][0];  // holds the residue alone
   CHECK(normal.returned > 0.0);
   CHECK(normal.floor >= normal.returned);
