@@ -150,8 +150,10 @@ AuditFace read_audit_face(const hdf5::Group& group, const std::string& name, std
   face.permittivity_rel = group.number("permittivityRel");
   face.permeability_rel = group.number("permeabilityRel");
   face.conductivity_s_per_m = group.number("conductivitySPerM");
+  face.clear_is_uniform = face.is_uniform;
   if (group.has_attribute("goesOnToWall")) {  // since layout 2
     face.magnetic_conductivity_ohm_per_m = group.number("magneticConductivityOhmPerM");
+    face.clear_is_uniform = group.integer("clearIsUniform") != 0;
     face.goes_on_to_wall = group.integer("goesOnToWall") != 0;
   }
   for (const std::string& plane : group.names())

@@ -125,6 +125,7 @@ void write_audit_face(hdf5::Group& audit, const AuditFace& face, std::size_t n_f
   group.set_number("permeabilityRel", face.permeability_rel);
   group.set_number("conductivitySPerM", face.conductivity_s_per_m);
   group.set_number("magneticConductivityOhmPerM", face.magnetic_conductivity_ohm_per_m);
+  group.set_integer("clearIsUniform", face.clear_is_uniform ? 1 : 0);
   group.set_integer("goesOnToWall", face.goes_on_to_wall ? 1 : 0);
   for (const AuditPlane& plane : face.planes) {
     const hdf5::Shape shape{n_frequencies, static_cast<std::size_t>(plane.shape[0]),

@@ -114,14 +114,15 @@ SplitPower& SplitPower::operator+=(const SplitPower& other) {
 }
 
 std::string no_split_because(const Lattice& lattice, const AuditRecord& audit, const AuditFace& face) {
-  if (!face.is_uniform && !face.is_layered) return "an object crosses the face's plane";
+  const bool records_tangential_e = face.is_uniform || !face.is_layered;
+  if (!face.clear_is_uniform && !face.is_layered) return "an object crosses the face's plane";
   const double inner_m = cell_outside_m(lattice, face, 0), outer_m = cell_outside_m(lattice, face, 1);
   if (std::abs(inner_m - outer_m) > 1e-9 * inner_m)
     return "the two cells between the audit's planes differ in length";
   const std::string modes_unfit = modes_unfit_because(lattice, audit.shell, face);
   if (modes_unfit.empty()) return {};
-  return face.is_uniform ? plane_waves_unfit_because(lattice, face.side)
-                         : "the face's plane crosses layers, and " + modes_unfit;
+  return records_tangential_e ? plane_waves_unfit_because(lattice, face.side)
+                              : "the face's plane crosses layers, and " + modes_unfit;
 }
 
 FacePlanes face_planes(const Lattice& lattice, const AuditFace& face, std::size_t frequency_index) {

@@ -111,6 +111,7 @@ FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const Au
   report.permittivity_rel = face.permittivity_rel;
   report.permeability_rel = face.permeability_rel;
   report.conductivity_s_per_m = face.conductivity_s_per_m;
+  report.kind = audit.shell[static_cast<std::size_t>(index_of(face.side))].kind;
   report.is_layered = !face.is_uniform && face.is_layered;
   report.goes_on_to_wall = face.goes_on_to_wall;
   report.shell_cells = lattice.shell(face.side);
@@ -137,7 +138,7 @@ FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const Au
 // The medium in which a face's angles are read.
 LatticeMedium reading_medium(const AuditFace& face, IndexRange window_along_z, double frequency_hz,
                              double dt_s) {
-  if (face.is_uniform)
+  if (face.is_uniform || !face.is_layered)
     return lattice_medium(face.permittivity_rel, face.permeability_rel, face.conductivity_s_per_m,
                           frequency_hz, dt_s, face.magnetic_conductivity_ohm_per_m);
   const LayeredProfile& p = face.profile;
@@ -264,9 +265,40 @@ const AngleSum& sum_over(const FaceReading& reading, AngleRange range) {
   return range == AngleRange::all ? reading.total : reading.near_normal;
 }
 
+FaceVerdict verdict_of(const FaceReport& face, const std::optional<double>& goal_db) {
+  FaceVerdict verdict;
+  bool any = false, all_known = true;
+  double worst_db = -infinity, unexpected_db = -infinity;
+  verdict.as_designed = true;
+  for (const FaceReading& reading : face.readings) {
+    if (!reading.whole && !(reading.total.outgoing_w_s2 > 0.0)) continue;
+    const Reflection& r = reading.whole ? reading.whole->reflection : reading.total.reflection;
+    any = true;
+    const bool is_value = r.kind == Reflection::Kind::value;
+    const double level_db = is_value ? r.value_db : r.high_db;
+    worst_db = std::max(worst_db, level_db);
+    if (goal_db && !is_value && level_db > *goal_db) all_known = false;
+    if (goal_db && is_value && level_db > *goal_db) verdict.misses_goal = true;
+    if (!reading.whole || !reading.whole->closure_db) {
+      verdict.as_designed.reset();
+      continue;
+    }
+    const double closure_db = *reading.whole->closure_db;
+    unexpected_db = std::max({unexpected_db, closure_db, r.floor_db});
+    const bool is_real = closure_db > r.floor_db + closure_margin_db && closure_db > r.value_db - 20.0;
+    if (is_real && verdict.as_designed) verdict.as_designed = false;
+  }
+  if (!any) return {};
+  verdict.worst_db = worst_db;
+  if (std::isfinite(unexpected_db)) verdict.unexpected_db = unexpected_db;
+  if (goal_db) verdict.holds_goal = !verdict.misses_goal && all_known;
+  return verdict;
+}
+
 const FaceReading* worst_reading(const FaceReport& face, AngleRange range) {
   const auto level_db = [range](const FaceReading& reading) {
-    const Reflection& r = sum_over(reading, range).reflection;
+    const Reflection& r = range == AngleRange::all && reading.whole ? reading.whole->reflection
+                                                                    : sum_over(reading, range).reflection;
     return r.kind == Reflection::Kind::value ? r.value_db : r.high_db;
   };
   const FaceReading* worst = nullptr;

@@ -92,6 +92,7 @@ struct FaceReading {
 
 struct FaceReport {
   Side side = Side::x_lo;
+  FaceKind kind = FaceKind::electric_wall;
   std::string not_split_because;  ///< empty: the face is split
   std::string basis;              ///< the functions of the split
   bool basis_is_exact = false;
@@ -119,6 +120,20 @@ struct ReportChoice {
 
 /// Throws std::invalid_argument when the record's planes do not fit its lattice.
 AuditReport audit_report(const AuditRecord& audit, const Lattice& lattice, const ReportChoice& choice);
+
+/// What the readings of all frequencies say of a face.
+struct FaceVerdict {
+  std::optional<double> worst_db;       ///< largest reading, or bound, over the frequencies; none: no reading
+  std::optional<double> unexpected_db;  ///< largest closure, or floor where that is above it
+  /// Whether what came back is what the layer's theory says: the closure lies within the floor, or 20 dB
+  /// under the reading. Empty without a theory or without a modal split.
+  std::optional<bool> as_designed;
+  std::optional<bool> holds_goal;  ///< every reading and every bound at or below the goal; empty without one
+  bool misses_goal = false;        ///< some reading is above the goal; false with holds_goal false: not shown
+};
+/// The three-plane floor was at worst 3 dB below the true error in the method's trial; this is twice that.
+inline constexpr double closure_margin_db = 6.0;
+FaceVerdict verdict_of(const FaceReport& face, const std::optional<double>& goal_db);
 
 /// The reading whose reflection, or bound, is the largest over the frequencies: over all angles or near the
 /// normal. Null when the face is not split or not illuminated.

@@ -176,7 +176,9 @@ bool cells_are_even(const Lattice& lattice, Axis a, IndexRange cells) {
 
 std::string modes_unfit_because(const Lattice& lattice, const std::array<Face, 6>& shell,
                                 const AuditFace& face) {
-  if (!face.is_uniform && !face.is_layered) return "an object crosses the face's plane";
+  if (!face.is_uniform && !face.is_layered)
+    return face.clear_is_uniform ? "an object crosses the side shells at the face's plane"
+                                 : "an object crosses the face's plane";
   for (Axis a : axes_of(face.side).tangential)
     if (const std::string unfit = no_modes_because(lattice, shell, a); !unfit.empty()) return unfit;
   return {};

@@ -91,7 +91,10 @@ struct AuditFace {
   /// tangential E). False on side faces of scenes layered along z (E_z and H_z recorded instead) and where
   /// objects cross the planes.
   bool is_uniform = true;
-  /// True when media at the planes depend on z only.
+  /// True when the clear part of it lies in one medium: then tangential E is recorded, unless layers run
+  /// through the side shells.
+  bool clear_is_uniform = true;
+  /// True when media at the planes, side shells included, depend on z only.
   bool is_layered = false;
   /// True when the media of the planes go on to the outer wall. An object inside the face's own shell makes
   /// it false; the split does not need it, the expected reading does.

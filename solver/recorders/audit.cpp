@@ -55,18 +55,20 @@ class CrossSection {
     for (Component c : all_components)
       for (const Paint& paint : reference_[at(c)])
         if (!(paint == any(c)) || paint.perfect) return false;
-    return agrees(false, true);
+    return agrees(Part::planes, true);
   }
+  bool clear_is_uniform() const { return agrees(Part::clear_planes, true); }
   bool is_layered() const {
     if (axis_of(side_) == Axis::z) return is_uniform();
     for (Component c : all_components)
       for (const Paint& paint : reference_[at(c)])
         if (paint.perfect) return false;
     return reference_[at(Component::ex)] == reference_[at(Component::ey)] &&
-           reference_[at(Component::hx)] == reference_[at(Component::hy)] && agrees(false, false);
+           reference_[at(Component::hx)] == reference_[at(Component::hy)] && agrees(Part::planes, false);
   }
-  bool goes_on_to_wall(bool uniform) const { return agrees(true, uniform); }
+  bool goes_on_to_wall(bool uniform) const { return agrees(Part::beyond, uniform); }
 
+  /// The paint in the middle of the reference row.
   const Paint& any(Component c) const {
     const auto& row = reference_[at(is_electric(c) ? Component::ex : Component::hx)];
     return row[row.size() / 2];
@@ -93,6 +95,7 @@ class CrossSection {
   }
 
  private:
+  enum class Part { planes, clear_planes, beyond };
   static std::size_t at(Component c) { return static_cast<std::size_t>(index_of(c)); }
 
   IndexRange planes(Component c) const {
@@ -113,12 +116,20 @@ class CrossSection {
     const IndexRange all = lattice_.stored(c, a);
     return is_half(c, a) || all.size() < 3 ? all : IndexRange{all.begin + 1, all.end - 1};
   }
-  bool agrees(bool outside, bool uniform) const {
+  // The clear indices without the rim, where an object that ends at the shell is half inside.
+  IndexRange inner_clear(Component c, Axis a) const {
+    const IndexRange clear = lattice_.clear(c, a);
+    return is_half(c, a) || clear.size() < 3 ? clear : IndexRange{clear.begin + 1, clear.end - 1};
+  }
+  bool agrees(Part part, bool uniform) const {
     std::vector<Paint> row;
     for (Component c : all_components) {
-      const IndexRange along_normal = outside ? beyond(c) : planes(c);
-      const IndexRange x = range(c, Axis::x, along_normal), y = range(c, Axis::y, along_normal);
-      const IndexRange z = range(c, Axis::z, along_normal);
+      const IndexRange along_normal = part == Part::beyond ? beyond(c) : planes(c);
+      const auto along = [&](Axis a) {
+        return part == Part::clear_planes && a != axis_of(side_) ? inner_clear(c, a)
+                                                                 : range(c, a, along_normal);
+      };
+      const IndexRange x = along(Axis::x), y = along(Axis::y), z = along(Axis::z);
       for (int i = x.begin; i < x.end; ++i) {
         for (int j = y.begin; j < y.end; ++j) {
           painter_.row(c, i, j, z, row);
@@ -164,6 +175,7 @@ AuditFace audit_face(const Problem& problem, const Painter& painter, Side side) 
   face.side = side;
   const CrossSection section(problem, painter, side);
   face.is_uniform = section.is_uniform();
+  face.clear_is_uniform = face.is_uniform || section.clear_is_uniform();
   face.is_layered = face.is_uniform || section.is_layered();
   face.goes_on_to_wall = (face.is_uniform || face.is_layered) && section.goes_on_to_wall(face.is_uniform);
   if (face.is_uniform) {

@@ -213,9 +213,9 @@ TEST_CASE("Faces that cannot be split say why", "[face_split]") {
   audit.is_uniform = false;
   audit.is_layered = true;
   CHECK_THAT(no_split_because(face.lattice(), AuditRecord{}, audit), Catch::Contains("layers"));
-  audit.is_layered = false;
+  audit.is_layered = audit.clear_is_uniform = false;
   CHECK_THAT(no_split_because(face.lattice(), AuditRecord{}, audit), Catch::Contains("object"));
-  audit.is_uniform = true;
+  audit.is_uniform = audit.clear_is_uniform = true;
 
   Lattice narrow = face.lattice();
   narrow.shell_cells[static_cast<std::size_t>(index_of(Side::x_lo))] = 30;
