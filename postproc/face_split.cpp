@@ -143,7 +143,7 @@ FacePlanes face_planes(const Lattice& lattice, const AuditFace& face, std::size_
   return planes;
 }
 
-FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, const LatticeMedium& medium,
+FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, const FaceMedium& medium,
                        const WaveBasis& basis, int angle_bins, const FaceTheory& theory) {
   if (angle_bins < 1) throw std::invalid_argument("at least one bin of angle is needed");
   const double w_per_m = medium.w_per_m();

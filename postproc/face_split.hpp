@@ -90,7 +90,7 @@ FacePlanes face_planes(const Lattice& lattice, const AuditFace& face, std::size_
 
 /// The split itself. Plane waves travelling closer to the face than sin(theta) = 0.9998 and evanescent ones
 /// are left out of the bins. spacing_m is that of the planes.
-FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, const LatticeMedium& medium,
+FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, const FaceMedium& medium,
                        const WaveBasis& basis, int angle_bins = default_angle_bins,
                        const FaceTheory& theory = {});
 

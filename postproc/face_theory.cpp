@@ -10,23 +10,6 @@ namespace wanewall {
 namespace {
 
 using Complex = std::complex<double>;
-constexpr Complex j{0.0, 1.0};
-
-// -prod ((1 - s q)/(1 + s q))^2 over the cells, q = j tan(k_n d/2): layer_table.hpp.
-Complex moebius_reflection(const MoebiusTable& layer, double spacing_m, double dt_s, double omega_rad_per_s,
-                           Complex normal_k_squared_per_m2) {
-  const Complex z_inverse = std::exp(Complex(0.0, -omega_rad_per_s * dt_s));
-  const Complex p = 2.0 / dt_s * (1.0 - z_inverse) / (1.0 + z_inverse);
-  const Complex k = outward_wavenumber(normal_k_squared_per_m2, spacing_m);
-  const Complex q = j * std::tan(0.5 * spacing_m * k);
-  Complex r = -1.0;
-  for (std::size_t n = 0; n < layer.kappa.size(); ++n) {
-    const Complex s = layer.kappa[n] + layer.sigma_s_per_m[n] / (layer.alpha_s_per_m[n] + eps0_f_per_m * p);
-    const Complex m = (1.0 - s * q) / (1.0 + s * q);
-    r *= m * m;
-  }
-  return r;
-}
 
 bool cells_are_even_to_wall(const Lattice& lattice, const AuditFace& face) {
   const MeshLines& lines = lattice.along(axis_of(face.side));
@@ -57,7 +40,7 @@ FaceTheory face_theory(const Lattice& lattice, const Face& layer, const AuditFac
     case FaceKind::moebius:
       if (layer.cells() > 0)
         theory.reflection = [=, table = layer.moebius](Complex k_n2) {
-          return moebius_reflection(table, d, dt_s, omega, k_n2);
+          return layer_reflection(table, d, dt_s, omega, k_n2);
         };
       break;
     default:

@@ -15,7 +15,7 @@
 namespace wanewall {
 
 /// A medium at one frequency, as the lattice sees it.
-struct LatticeMedium {
+struct FaceMedium {
   std::complex<double> w2_per_m2;                                 ///< W^2
   std::complex<double> omega_mu_ohm_per_m;                        ///< Omega mu - j sigma_m cos(omega dt/2)
   std::complex<double> admittivity_s_per_m;                       ///< y
@@ -24,8 +24,8 @@ struct LatticeMedium {
 
 /// Relative permittivity and permeability >= 1, conductivities >= 0. Throws std::invalid_argument when the
 /// frequency is not between 0 and half a period per time step.
-LatticeMedium lattice_medium(double permittivity_rel, double permeability_rel, double conductivity_s_per_m,
-                             double frequency_hz, double dt_s, double magnetic_conductivity_ohm_per_m = 0.0);
+FaceMedium face_medium(double permittivity_rel, double permeability_rel, double conductivity_s_per_m,
+                       double frequency_hz, double dt_s, double magnetic_conductivity_ohm_per_m = 0.0);
 
 /// (2/d) asin(K_n d/2) [rad/m] of the wave with K_n^2 = `normal_k_squared_per_m2`: the root that decays
 /// outwards, Im < 0, and the one that travels outwards, Re > 0, when there is no decay.
@@ -33,7 +33,7 @@ std::complex<double> outward_wavenumber(std::complex<double> normal_k_squared_pe
 
 /// The same for the wave whose transverse second differences have the eigenvalue `transverse_per_m2`
 /// (-K_x^2 - K_y^2 for a plane wave).
-std::complex<double> normal_wavenumber(const LatticeMedium& medium, std::complex<double> transverse_per_m2,
+std::complex<double> normal_wavenumber(const FaceMedium& medium, std::complex<double> transverse_per_m2,
                                        double spacing_m);
 
 /// Power density per |E_t|^2 [S] that a plane wave carries through a face, as 1/2 Re(E x H*).n with E on the
@@ -46,6 +46,6 @@ struct NormalFlux {
   double tm_outgoing = 0.0;
   double tm_returned = 0.0;
 };
-NormalFlux normal_flux(const LatticeMedium& medium, std::complex<double> normal_rad_per_m, double spacing_m);
+NormalFlux normal_flux(const FaceMedium& medium, std::complex<double> normal_rad_per_m, double spacing_m);
 
 }  // namespace wanewall

@@ -134,8 +134,8 @@ std::optional<double> incident_power_w_s2(const Lattice& lattice, const AuditRec
     permittivity_rel = other.permittivity_rel;
     permeability_rel = other.permeability_rel;
   }
-  const double w_per_m = lattice_medium(permittivity_rel, permeability_rel, 0.0,
-                                        audit.frequencies_hz.at(frequency_index), lattice.dt_s)
+  const double w_per_m = face_medium(permittivity_rel, permeability_rel, 0.0,
+                                     audit.frequencies_hz.at(frequency_index), lattice.dt_s)
                              .w_per_m();
   const double d = cell_outside_m(lattice, face, 0);
   const double kz = cosine * wavenumber_along(lattice, audit.incident_direction, w_per_m);

@@ -66,8 +66,7 @@ double depth_m(const Lattice& lattice, const AuditFace& face) {
 }
 
 void add_split(FaceReading& reading, const Lattice& lattice, const AuditFace& face, std::size_t f,
-               const LatticeMedium& medium, const WaveBasis& basis, const FaceTheory& theory,
-               int angle_bins) {
+               const FaceMedium& medium, const WaveBasis& basis, const FaceTheory& theory, int angle_bins) {
   const FaceSplit split = split_planes(face_planes(lattice, face, f), face.side,
                                        cell_outside_m(lattice, face, 0), medium, basis, angle_bins, theory);
   SplitPower all = split.totals[0], near;
@@ -136,16 +135,16 @@ FaceReport face_frame(const AuditRecord& audit, const Lattice& lattice, const Au
 }
 
 // The medium in which a face's angles are read.
-LatticeMedium reading_medium(const AuditFace& face, IndexRange window_along_z, double frequency_hz,
-                             double dt_s) {
+FaceMedium reading_medium(const AuditFace& face, IndexRange window_along_z, double frequency_hz,
+                          double dt_s) {
   if (face.is_uniform || !face.is_layered)
-    return lattice_medium(face.permittivity_rel, face.permeability_rel, face.conductivity_s_per_m,
-                          frequency_hz, dt_s, face.magnetic_conductivity_ohm_per_m);
+    return face_medium(face.permittivity_rel, face.permeability_rel, face.conductivity_s_per_m, frequency_hz,
+                       dt_s, face.magnetic_conductivity_ohm_per_m);
   const LayeredProfile& p = face.profile;
   const auto at = static_cast<std::size_t>(window_along_z.begin);
-  return lattice_medium(p.permittivity_rel_half.at(at), p.permeability_rel_half.at(at),
-                        p.conductivity_s_per_m_half.at(at), frequency_hz, dt_s,
-                        p.magnetic_conductivity_ohm_per_m_half.at(at));
+  return face_medium(p.permittivity_rel_half.at(at), p.permeability_rel_half.at(at),
+                     p.conductivity_s_per_m_half.at(at), frequency_hz, dt_s,
+                     p.magnetic_conductivity_ohm_per_m_half.at(at));
 }
 
 void fill_reading(FaceReading& reading, const AuditRecord& audit, const Lattice& lattice,
@@ -155,7 +154,7 @@ void fill_reading(FaceReading& reading, const AuditRecord& audit, const Lattice&
   reading.incident_w_s2 = incident_power_w_s2(lattice, audit, face, f);
   if (!frame.not_split_because.empty()) return;
   const IndexRange window = reading_cells(lattice, face, Axis::z);
-  const LatticeMedium medium = reading_medium(face, window, reading.frequency_hz, lattice.dt_s);
+  const FaceMedium medium = reading_medium(face, window, reading.frequency_hz, lattice.dt_s);
   const WaveBasis basis = frame.basis_is_modal ? modal_basis(lattice, face, modes, medium, window)
                                                : tapered_plane_waves(lattice, face.side, medium);
   const Face& layer = audit.shell[static_cast<std::size_t>(index_of(face.side))];

@@ -214,7 +214,7 @@ IndexRange reading_cells(const Lattice& lattice, const AuditFace& face, Axis axi
 }
 
 WaveBasis modal_basis(const Lattice& lattice, const AuditFace& face, const CrossSectionModes& modes,
-                      const LatticeMedium& medium, IndexRange window) {
+                      const FaceMedium& medium, IndexRange window) {
   const std::array<Axis, 2> axes = axes_of(face.side).tangential;
   WaveBasis basis;
   basis.per_area_per_m2 = 1.0;
@@ -272,7 +272,7 @@ std::string plane_waves_unfit_because(const Lattice& lattice, Side side) {
   return {};
 }
 
-WaveBasis tapered_plane_waves(const Lattice& lattice, Side side, const LatticeMedium& medium) {
+WaveBasis tapered_plane_waves(const Lattice& lattice, Side side, const FaceMedium& medium) {
   const std::string unfit = plane_waves_unfit_because(lattice, side);
   if (!unfit.empty()) throw std::invalid_argument("no plane waves on this face: " + unfit);
   const std::array<Axis, 2> axes = axes_of(side).tangential;

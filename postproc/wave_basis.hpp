@@ -67,7 +67,7 @@ struct CrossSectionModes {
 /// The lattice's own modes. Angles are read under one Hann taper over the clear width, along z over `window`
 /// on faces of layered media. medium: that of the face, or of the window.
 WaveBasis modal_basis(const Lattice& lattice, const AuditFace& face, const CrossSectionModes& modes,
-                      const LatticeMedium& medium, IndexRange window);
+                      const FaceMedium& medium, IndexRange window);
 
 /// Cells along an axis under the taper of modal_basis(): the clear ones; along z on faces of layered media
 /// the longest run of them in one medium.
@@ -96,6 +96,6 @@ std::string plane_waves_unfit_because(const Lattice& lattice, Side side);
 ///   powers stand for the whole of it. The flat-tapered part is zero padded to 40 wavelengths, and by 16 at
 ///   least: the error must not come round.
 /// Throws std::invalid_argument when plane_waves_unfit_because() has something to say.
-WaveBasis tapered_plane_waves(const Lattice& lattice, Side side, const LatticeMedium& medium);
+WaveBasis tapered_plane_waves(const Lattice& lattice, Side side, const FaceMedium& medium);
 
 }  // namespace wanewall

@@ -191,9 +191,9 @@ inline FacePlanes planes_of(const TestFace& face, const WaveSum& waves) {
   return planes;
 }
 
-inline LatticeMedium medium_of(const TestFace& face) {
-  return lattice_medium(face.medium.permittivity_rel, face.medium.permeability_rel,
-                        face.medium.conductivity_s_per_m, face.frequency_hz, face.dt_s);
+inline FaceMedium medium_of(const TestFace& face) {
+  return face_medium(face.medium.permittivity_rel, face.medium.permeability_rel,
+                     face.medium.conductivity_s_per_m, face.frequency_hz, face.dt_s);
 }
 
 inline FaceSplit split_of(const TestFace& face, const WaveSum& waves) {

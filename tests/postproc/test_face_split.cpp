@@ -61,7 +61,7 @@ TEST_CASE("On a periodic cross-section single waves are split to rounding", "[fa
   const double kv = lattice_k(wave.k_v_rad_per_m[0], face.spacing_m[1]);
   const double theta_deg = std::asin(std::hypot(ku, kv) / face.w_per_m()) * 180.0 / pi;
   const auto bin = static_cast<std::size_t>(theta_deg / 10.0);
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const NormalFlux flux = normal_flux(
       medium, normal_wavenumber(medium, -ku * ku - kv * kv, face.spacing_m[2]), face.spacing_m[2]);
   const double area = 48 * face.spacing_m[0] * 55 * face.spacing_m[1];
@@ -103,7 +103,7 @@ TEST_CASE("A conducting medium is split with its own complex wavenumbers", "[fac
   // for the other.
   const double ku = lattice_k(wave.k_u_rad_per_m[0], face.spacing_m[0]);
   const double kv = lattice_k(wave.k_v_rad_per_m[0], face.spacing_m[1]);
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const NormalFlux flux = normal_flux(
       medium, normal_wavenumber(medium, -ku * ku - kv * kv, face.spacing_m[2]), face.spacing_m[2]);
   CHECK(te.returned / te.outgoing == Approx(0.04 * flux.te_returned / flux.te_outgoing).epsilon(1e-10));
@@ -134,7 +134,7 @@ TEST_CASE("The largest wave of an even period counts once", "[face_split]") {
   REQUIRE(basis.plane_wave_per_m[0].size() == 4);
   const FaceSplit split = split_of(face, periodic_wave(face, 2, 0, 0.0, 0.0));
   const double area = 4 * face.spacing_m[0] * face.spacing_m[1];
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const double k = 2.0 / face.spacing_m[0];
   const NormalFlux flux =
       normal_flux(medium, normal_wavenumber(medium, -k * k, face.spacing_m[2]), face.spacing_m[2]);
@@ -167,7 +167,7 @@ TEST_CASE("All six faces read the same field alike", "[face_split]") {
 TEST_CASE("Under the taper a uniform wave has the power of the clear cross-section", "[face_split]") {
   const TestFace face = wide_face();
   const FaceSplit split = split_of(face, one_wave(face, 0.0, 0.0, 1.0, 1.0));
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const NormalFlux flux =
       normal_flux(medium, normal_wavenumber(medium, 0.0, face.spacing_m[2]), face.spacing_m[2]);
   const double area = 90 * face.spacing_m[0] * 75 * face.spacing_m[1];
@@ -179,7 +179,7 @@ TEST_CASE("The basis can be replaced", "[face_split]") {
   // their eigenvalue. The split must not care.
   const TestFace face = wide_face();
   const WaveSum waves = waves_of(face, {TestSource::Kind::beam, 1.3, 0.0, 0.1, 40.0});
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const WaveBasis plane_waves = tapered_plane_waves(face.lattice(), face.side, medium);
   WaveBasis standing = plane_waves;
   for (auto& component : standing.parts) {

@@ -94,7 +94,7 @@ TEST_CASE("The second taper is worth 30 dB at small angles", "[face_split][floor
   // method's trial with point sources before a face of the same width, -45, -33, -34, -34, -32 dB at 5, 15,
   // 25, 35, 45 degrees, is what it leaves here too, within the scatter between fields.
   const TestFace face = face_of_the_tables();
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const Lattice lattice = face.lattice();
   const WaveSum waves = waves_of(face, {});
   const FaceSplit two = split_of(face, waves);
@@ -185,7 +185,7 @@ TEST_CASE("The third plane sees what is not a wave", "[face_split][floor]") {
   const double residue = 1e-3;
   for (auto& component : planes)
     for (auto& plane : component) plane.array() += residue;
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const WaveBasis basis = tapered_plane_waves(face.lattice(), face.side, medium);
   const FaceSplit split = split_planes(planes, face.side, face.spacing_m[2], medium, basis);
   const SplitPower& normal = split.bins[0][0];  // holds the residue alone

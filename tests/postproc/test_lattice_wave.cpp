@@ -15,7 +15,7 @@ TEST_CASE("The normal wavenumber has the lattice's textbook phase velocity", "[l
   const double d_m = 1e-3, dt_s = 0.5 * d_m / c0_m_per_s;
   const auto error_percent = [&](double cells_per_wavelength) {
     const double f_hz = c0_m_per_s / (cells_per_wavelength * d_m);
-    const auto kz = normal_wavenumber(lattice_medium(1.0, 1.0, 0.0, f_hz, dt_s), 0.0, d_m);
+    const auto kz = normal_wavenumber(face_medium(1.0, 1.0, 0.0, f_hz, dt_s), 0.0, d_m);
     CHECK(kz.imag() == 0.0);
     return 100.0 * (2.0 * pi * f_hz / (kz.real() * c0_m_per_s) - 1.0);
   };
@@ -26,7 +26,7 @@ TEST_CASE("The normal wavenumber has the lattice's textbook phase velocity", "[l
 TEST_CASE("Waves leave: they travel or decay outwards", "[lattice_wave]") {
   const double d_m = 1e-2, dt_s = 1.5e-11, f_hz = 2e9;
   const double sigma = GENERATE(0.0, 1e-6, 0.02, 5.0);
-  const LatticeMedium medium = lattice_medium(2.5, 1.3, sigma, f_hz, dt_s);
+  const FaceMedium medium = face_medium(2.5, 1.3, sigma, f_hz, dt_s);
   for (double k_t : {0.0, 0.5, 0.999, 1.001, 1.5, 4.0}) {
     const std::complex<double> transverse = -std::pow(k_t * medium.w_per_m(), 2);
     const auto kz = normal_wavenumber(medium, transverse, d_m);
@@ -42,7 +42,7 @@ TEST_CASE("Waves leave: they travel or decay outwards", "[lattice_wave]") {
 
 TEST_CASE("Power of a wave in a lossless medium has its closed form", "[lattice_wave]") {
   const double d_m = 1.1e-2, dt_s = 1.5e-11, f_hz = 2.2e9, eps = 2.0, mu = 1.5;
-  const LatticeMedium medium = lattice_medium(eps, mu, 0.0, f_hz, dt_s);
+  const FaceMedium medium = face_medium(eps, mu, 0.0, f_hz, dt_s);
   const double w = medium.w_per_m(), eta = eta0_ohm * std::sqrt(mu / eps);
   for (double theta : {0.0, 0.4, 0.9, 1.4}) {
     const double kz = normal_wavenumber(medium, -std::pow(w * std::sin(theta), 2), d_m).real();
@@ -56,7 +56,7 @@ TEST_CASE("Power of a wave in a lossless medium has its closed form", "[lattice_
 
 TEST_CASE("Evanescent waves of a lossless medium carry no power alone", "[lattice_wave]") {
   const double d_m = 1e-2;
-  const LatticeMedium medium = lattice_medium(1.0, 1.0, 0.0, 2e9, 1.5e-11);
+  const FaceMedium medium = face_medium(1.0, 1.0, 0.0, 2e9, 1.5e-11);
   const auto kz = normal_wavenumber(medium, -std::pow(1.4 * medium.w_per_m(), 2), d_m);
   const NormalFlux flux = normal_flux(medium, kz, d_m);
   const double scale = 1.0 / eta0_ohm;
@@ -71,7 +71,7 @@ TEST_CASE("Power tends to the continuum's at second order in the mesh", "[lattic
   const double f_hz = 1e9, theta = 0.7;
   const auto error = [&](double cells_per_wavelength, double sigma, bool tm) {
     const double d_m = c0_m_per_s / f_hz / cells_per_wavelength, dt_s = 0.5 * d_m / c0_m_per_s;
-    const LatticeMedium medium = lattice_medium(1.0, 1.0, sigma, f_hz, dt_s);
+    const FaceMedium medium = face_medium(1.0, 1.0, sigma, f_hz, dt_s);
     if (sigma > 0.0) {
       const NormalFlux flux = normal_flux(medium, normal_wavenumber(medium, 0.0, d_m), d_m);
       const std::complex<double> y{sigma, 2.0 * pi * f_hz * eps0_f_per_m};
@@ -96,7 +96,7 @@ TEST_CASE("Power tends to the continuum's at second order in the mesh", "[lattic
 }
 
 TEST_CASE("A frequency beyond the time step's limit is refused", "[lattice_wave]") {
-  CHECK_THROWS_AS(lattice_medium(1.0, 1.0, 0.0, 0.0, 1e-11), std::invalid_argument);
-  CHECK_THROWS_AS(lattice_medium(1.0, 1.0, 0.0, 6e10, 1e-11), std::invalid_argument);
-  CHECK_NOTHROW(lattice_medium(1.0, 1.0, 0.0, 4e10, 1e-11));
+  CHECK_THROWS_AS(face_medium(1.0, 1.0, 0.0, 0.0, 1e-11), std::invalid_argument);
+  CHECK_THROWS_AS(face_medium(1.0, 1.0, 0.0, 6e10, 1e-11), std::invalid_argument);
+  CHECK_NOTHROW(face_medium(1.0, 1.0, 0.0, 4e10, 1e-11));
 }

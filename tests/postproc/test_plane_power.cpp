@@ -41,7 +41,7 @@ double power_by_flux(const TestFace& face, const WaveSum& waves) {
     for (Eigen::Index q = 0; q < waves.te_out.cols(); ++q) {
       const double ku = lattice_k(waves.k_u_rad_per_m[p], face.spacing_m[0]);
       const double kv = lattice_k(waves.k_v_rad_per_m[q], face.spacing_m[1]);
-      const LatticeMedium medium = medium_of(face);
+      const FaceMedium medium = medium_of(face);
       const NormalFlux flux = normal_flux(
           medium, normal_wavenumber(medium, -ku * ku - kv * kv, face.spacing_m[2]), face.spacing_m[2]);
       sum +=
@@ -87,7 +87,7 @@ TEST_CASE("Clear and whole cross-section are told apart", "[plane_power]") {
   const WaveSum waves = one_wave(face, 0.0, 0.0, 1.0, 0.5);
   const auto net = net_power(face.lattice(), audit_face(face, waves), 0);
   REQUIRE(net);
-  const LatticeMedium medium = medium_of(face);
+  const FaceMedium medium = medium_of(face);
   const NormalFlux flux =
       normal_flux(medium, normal_wavenumber(medium, 0.0, face.spacing_m[2]), face.spacing_m[2]);
   const double density = flux.te_outgoing + 0.25 * flux.tm_outgoing;
