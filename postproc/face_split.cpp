@@ -18,7 +18,8 @@ using Matrix = Eigen::MatrixXcd;
 constexpr Complex j{0.0, 1.0};
 constexpr double grazing_limit = 0.9998;
 
-// 6 dB: on eight runs of the method's trial two bins lay 2 and 5 dB above the bare rule.
+// 6 dB: true errors lay up to 5 dB above the bare rule in bins of angle, and up to 3.3 dB above it for a face
+// as a whole (tests/published/test_shell_audit.cpp, records cut short).
 constexpr double floor_margin = 4.0;
 
 // One component's coefficients, or the plane waves made of them.
@@ -176,7 +177,7 @@ FaceSplit split_planes(const FacePlanes& planes, Side side, double spacing_m, co
   }
   if (basis.has_modes() && outgoing > 0.0) {
     whole.returned = std::sqrt(returned / outgoing);
-    whole.floor = std::sqrt(difference / outgoing) / (w_per_m * spacing_m);
+    whole.floor = std::sqrt(floor_margin * difference / outgoing) / (w_per_m * spacing_m);
     if (theory.reflection) {
       whole.expected = std::sqrt(expected / outgoing);
       whole.closure = std::sqrt(unexpected / outgoing);

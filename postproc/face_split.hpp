@@ -56,7 +56,7 @@ struct SplitPower {
 /// Field norms over the whole plane, side shells included, relative to the outgoing wave's.
 struct WholePlane {
   double returned = 0.0;
-  double floor = 0.0;              ///< from the third plane, no margin
+  double floor = 0.0;              ///< from the third plane, with its margin
   std::optional<double> expected;  ///< by the layer's theory
   std::optional<double> closure;   ///< of returned minus expected
 };

@@ -32,7 +32,8 @@ TEST_CASE("A record gives back the scene, the mesh and the provenance", "[record
   CHECK(record.lattice.dt_s == scene.problem.lattice.dt_s);
   CHECK(record.precision == scene.problem.precision);
   for (const Side side : all_sides)
-    CHECK(record.result.audit.shell[static_cast<std::size_t>(index_of(side))].kind == scene.problem.face(side).kind);
+    CHECK(record.result.audit.shell[static_cast<std::size_t>(index_of(side))].kind ==
+          scene.problem.face(side).kind);
 
   const Provenance p = small_provenance();
   CHECK(record.provenance.program_version == p.program_version);
@@ -45,6 +46,63 @@ TEST_CASE("A record gives back the scene, the mesh and the provenance", "[record
   CHECK(record.provenance.threads == p.threads);
   CHECK(record.provenance.vector_code == p.vector_code);
   CHECK(record.provenance.schedule == p.schedule);
+}
+
+TEST_CASE("A record says exactly what shell ran and what the audit's split needs of the media", "[record]") {
+  const TemporaryFolder folder;
+  Scene scene = small_scene();
+  const auto face_at = [&](Side side) -> Face& {
+    return scene.problem.faces[static_cast<std::size_t>(index_of(side))];
+  };
+  face_at(Side::x_lo).layer = polynomial_layer({3.0, 0.7, 2.5, 1.0 / 3.0, 1.0}, 2);
+  face_at(Side::x_hi).layer = polynomial_layer({2.0, 0.1, 1.0, 0.0, 1.0}, 2);
+  face_at(Side::z_lo).kind = FaceKind::moebius;
+  face_at(Side::z_lo).moebius = {{0.25, 1.0 / 3.0, 2.0}, {0.5, 1e-17, 7.0}, {1e-3, 0.0, 0.1}};
+  face_at(Side::z_hi).kind = FaceKind::one_way;
+  face_at(Side::z_hi).one_way_order = 2;
+  RunResult result = small_result();
+  AuditFace& z = result.audit.faces.at(0);
+  z.goes_on_to_wall = false;
+  z.magnetic_conductivity_ohm_per_m = 12.5;
+  AuditFace& x = result.audit.faces.at(1);
+  x.clear_is_uniform = false;
+  x.profile = {{1.0, 2.0, 1.0 / 3.0}, {0.0, 0.1, 0.2}, {4.0, 5.0},       {0.3, 0.4},
+               {1.1, 1.2, 1.3},       {6.0, 7.0, 8.0}, {1.4, 1.0 / 7.0}, {9.0, 10.0}};
+  {
+    RecordWriter writer(folder / "run.h5", scene);
+    writer.finish(result, small_provenance(), false);
+  }
+  const AuditRecord back = Record(folder / "run.h5").result.audit;
+  for (Side side : all_sides) {
+    const Face& face = back.shell[static_cast<std::size_t>(index_of(side))];
+    CAPTURE(name_of(side));
+    CHECK(face.kind == face_at(side).kind);
+    CHECK(face.one_way_order == face_at(side).one_way_order);
+    CHECK(face.layer.sigma_e_s_per_m == face_at(side).layer.sigma_e_s_per_m);
+    CHECK(face.layer.sigma_h_s_per_m == face_at(side).layer.sigma_h_s_per_m);
+    CHECK(face.layer.kappa_e == face_at(side).layer.kappa_e);
+    CHECK(face.layer.kappa_h == face_at(side).layer.kappa_h);
+    CHECK(face.layer.alpha_e_s_per_m == face_at(side).layer.alpha_e_s_per_m);
+    CHECK(face.layer.alpha_h_s_per_m == face_at(side).layer.alpha_h_s_per_m);
+    CHECK(face.moebius.kappa == face_at(side).moebius.kappa);
+    CHECK(face.moebius.sigma_s_per_m == face_at(side).moebius.sigma_s_per_m);
+    CHECK(face.moebius.alpha_s_per_m == face_at(side).moebius.alpha_s_per_m);
+  }
+  CHECK_FALSE(back.faces.at(0).goes_on_to_wall);
+  CHECK(back.faces.at(0).clear_is_uniform);
+  CHECK(back.faces.at(0).magnetic_conductivity_ohm_per_m == 12.5);
+  CHECK(back.faces.at(0).profile.empty());
+  CHECK(back.faces.at(1).goes_on_to_wall);
+  CHECK_FALSE(back.faces.at(1).clear_is_uniform);
+  const LayeredProfile &p = back.faces.at(1).profile, &q = x.profile;
+  CHECK(p.permittivity_rel_node == q.permittivity_rel_node);
+  CHECK(p.conductivity_s_per_m_node == q.conductivity_s_per_m_node);
+  CHECK(p.permittivity_rel_half == q.permittivity_rel_half);
+  CHECK(p.conductivity_s_per_m_half == q.conductivity_s_per_m_half);
+  CHECK(p.permeability_rel_node == q.permeability_rel_node);
+  CHECK(p.magnetic_conductivity_ohm_per_m_node == q.magnetic_conductivity_ohm_per_m_node);
+  CHECK(p.permeability_rel_half == q.permeability_rel_half);
+  CHECK(p.magnetic_conductivity_ohm_per_m_half == q.magnetic_conductivity_ohm_per_m_half);
 }
 
 TEST_CASE("A record gives back all of a run's result", "[record]") {

@@ -217,7 +217,33 @@ TEST_CASE("The audit knows uniform, layered and crossed faces", "[recorders][aud
     }
     CHECK(ez == (side_face ? 3 : 0));
     CHECK(hz == (side_face ? 3 : 0));
+    CHECK(face.goes_on_to_wall);
+    // The profile is that of the update: each node of Ex and Ey, each half node of Ez, shell included.
+    CHECK(face.profile.empty() == !side_face);
+    if (face.profile.empty()) continue;
+    const auto cells = static_cast<std::size_t>(p.lattice.cells(Axis::z));
+    REQUIRE(face.profile.permittivity_rel_node.size() == cells + 1);
+    REQUIRE(face.profile.permittivity_rel_half.size() == cells);
+    for (std::size_t k = 0; k < cells; ++k) {
+      const double node_m = p.lattice.along(Axis::z).node_m(static_cast<int>(k));
+      const double half_m = p.lattice.along(Axis::z).half_m(static_cast<int>(k));
+      CAPTURE(k);
+      CHECK(face.profile.permittivity_rel_half[k] == (half_m < 11e-3 ? 4.0 : 1.0));
+      CHECK(face.profile.conductivity_s_per_m_half[k] == (half_m < 11e-3 ? 0.01 : 0.0));
+      if (std::abs(node_m - 11e-3) > 1e-4)
+        CHECK(face.profile.permittivity_rel_node[k] == (node_m < 11e-3 ? 4.0 : 1.0));
+      else  // on the boundary, the mean of both
+        CHECK(face.profile.permittivity_rel_node[k] == Approx(2.5));
+    }
   }
+  // An object inside the shell of x+ does not hinder the split; the expected reading must know.
+  const double wall_m = p.lattice.along(Axis::x).node_m(p.lattice.cells(Axis::x));
+  const double cell_x_m = p.lattice.along(Axis::x).cell_m(0);
+  p.objects.push_back(
+      {Box{{wall_m - 1.2 * cell_x_m, 8e-3, 8e-3}, {wall_m, 10e-3, 10e-3}, {0, 0, 1}, 0.0}, 0, "in"});
+  CHECK(look(Side::x_hi).is_layered);
+  CHECK_FALSE(look(Side::x_hi).goes_on_to_wall);
+  p.objects.pop_back();
   p.objects.push_back({Box{{3e-3, 8e-3, 8e-3}, {9e-3, 10e-3, 10e-3}, {0, 0, 1}, 0.0}, 0, "void"});
   CHECK_FALSE(look(Side::x_lo).is_layered);
   CHECK_FALSE(look(Side::x_lo).is_uniform);
