@@ -80,7 +80,9 @@ TEST_CASE("tables prints where every figure comes from and reads a known reflect
                               Catch::Contains("plane waves over one period"));
   CHECK_THAT(outcome.out, Catch::Contains("## Face z+ (cfs_pml, 3 cells)") && Catch::Contains("| -20.0 "));
   CHECK_THAT(outcome.out, Catch::Contains("## Points") && Catch::Contains("above_drum"));
-  CHECK_THAT(outcome.out, !Catch::Contains("nan") && !Catch::Contains("inf"));
+  std::string numbers = outcome.out;  // "infinite face" is a word, not a number
+  for (std::size_t at; (at = numbers.find("infinite")) != std::string::npos;) numbers.erase(at, 8);
+  CHECK_THAT(numbers, !Catch::Contains("nan") && !Catch::Contains("inf"));
 }
 
 TEST_CASE("tables writes its files whole, and the same Markdown as on the terminal", "[tables]") {

@@ -118,8 +118,7 @@ inline RunResult small_result() {
     face.conductivity_s_per_m = 2e-3;
     for (const Component c : {Component::hy, Component::ex, Component::ey}) {
       AuditPlane plane{c, 5 + index_of(c), 0.125, {4, 3}, {}};
-      for (int n = 0; n < 3 * 4 * 3; ++n)
-        plane.sums.emplace_back(0.1f * static_cast<float>(n), static_cast<float>(-n) / 7.0f);
+      for (int n = 0; n < 3 * 4 * 3; ++n) plane.sums.emplace_back(0.1 * n, -n / 7.0);
       face.planes.push_back(plane);
     }
     result.audit.faces.push_back(face);

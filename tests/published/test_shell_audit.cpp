@@ -302,12 +302,12 @@ TEST_CASE("Energy out and energy back differ by what passes through the plane", 
   set_face(p, Side::z_hi, FaceKind::cfs_pml, graded(-20.0, 8));
   Pulse pulse;
   pulse.centre_hz = 24e9;
-  pulse.width_s = 40e-12;
-  pulse.delay_s = 7.0 * 40e-12;
+  pulse.width_s = 100e-12;  // nothing at the next wave's cut-off, which would ring
+  pulse.delay_s = 7.0 * 100e-12;
   p.dipoles.push_back({false, {5.3e-3, 4.1e-3, 14.2e-3}, {1e-3, 0.4e-3, 0.7e-3}, pulse});
-  p.recording.audit.frequencies_hz = {20e9, 30e9};
+  p.recording.audit.frequencies_hz = {22e9, 26e9};
   p.recording.audit.faces = {false, false, false, false, false, true};
-  p.stop.at_s = 5000 * p.lattice.dt_s;
+  p.stop.at_s = 4000 * p.lattice.dt_s;
   const AuditReport report = audit_report(run_of(p).audit, p.lattice, {});
   for (const FaceReading& reading : report.faces.at(0).readings) {
     const double floor = std::pow(10.0, reading.total.reflection.floor_db / 20.0);
@@ -315,6 +315,6 @@ TEST_CASE("Energy out and energy back differ by what passes through the plane", 
     const double open = std::abs(out - back - reading.net->clear_w_s2) / out;
     CAPTURE(reading.frequency_hz, reading.total.reflection.value_db, reading.total.reflection.floor_db, open);
     CHECK(reading.total.reflection.value_db > -30.0);
-    CHECK(open < 4.0 * floor + 1e-12);
+    CHECK(open < 4.0 * floor + 1e-10);
   }
 }
