@@ -50,7 +50,8 @@ constexpr const char* method_of_power = R"(## How to read the shell tables
 constexpr const char* method_of_split =
     R"(- `outgoing` and `returned` are split from fields on two adjacent planes, wave by wave, with the lattice's own
   wavenumbers. R is returned over outgoing. `outgoing share` is a part of the face's outgoing power.
-- `floor` is what R would read by error alone, from a third plane of the same run, with a margin of 6 dB. The range that it leaves open around R, 20 log(r - f) to 20 log(r + f), is in the CSV tables.
+- `floor` is what R would read by error alone, from a third plane of the same run, with a margin of 6 dB. The
+  range that it leaves open around R, 20 log(r - f) to 20 log(r + f), is in the CSV tables.
 - `< x (floor)`: the floor is within 6 dB of the reading or above it, so only the bound x is known. `no reading`: not
   even a bound below 0 dB.
 - `expected` is what the layer that ran should return by its theory on the lattice, wave by wave and through the same
