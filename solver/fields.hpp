@@ -6,6 +6,7 @@
 #pragma once
 
 #include <array>
+#include <span>
 
 #include "geometry/lattice.hpp"
 #include "solver/aligned_array.hpp"
@@ -40,6 +41,8 @@ class Fields {
   /// Row (0, 0); row (i, j) is layout().at(i, j) further on.
   Real* first(Component c) { return first_[static_cast<std::size_t>(index_of(c))]; }
   const RowLayout& layout() const { return layout_; }
+  /// All values of a component, padding and entries that do not exist included.
+  std::span<Real> values(Component c) { return {first(c), layout_.size()}; }
   static std::size_t bytes(const RowLayout& layout);
 
  private:

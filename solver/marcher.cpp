@@ -24,17 +24,25 @@ int n_rows(const Lattice& lattice, Axis a) {
   return lattice.cells(a) + (lattice.periodic[static_cast<std::size_t>(index_of(a))] ? 0 : 1);
 }
 
-/// Rows along an axis in groups: the nodes of a Moebius layer together, all others alone.
+/// Rows along an axis in groups: the nodes of a Moebius layer together, those on and next to a one_way wall
+/// together, all others alone.
 std::vector<int> group_rows(const Problem& problem, Axis axis) {
   const int n = problem.lattice.cells(axis), rows = n_rows(problem.lattice, axis);
   const auto cells = [&](bool high) {
     const Face& face = problem.face(side_of(axis, high));
     return face.kind == FaceKind::moebius ? face.cells() : 0;
   };
+  const auto is_one_way = [&](bool high) {
+    return problem.face(side_of(axis, high)).kind == FaceKind::one_way;
+  };
   const int lo_end = cells(false) + 1, hi_begin = n - cells(true);
-  std::vector<int> begin;
-  for (int index = 0; index < rows; ++index)
-    if (index < 2 || (index >= lo_end && index <= hi_begin) || index == n) begin.push_back(index);
+  std::vector<int> begin{0};
+  for (int index = 1; index < rows; ++index) {
+    const bool first_of_lo = index == 1 && !is_one_way(false);
+    const bool between = index > 1 && index >= lo_end && index <= hi_begin && index < n;
+    const bool on_hi = index == n && n > 1 && !is_one_way(true);
+    if (first_of_lo || between || on_hi) begin.push_back(index);
+  }
   begin.push_back(rows);
   return begin;
 }
@@ -74,6 +82,7 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
       e_memory_(layout_, layer_sizes(problem, LayerPart::cfs_e, layout_, sizeof(Real))),
       h_memory_(layout_, layer_sizes(problem, LayerPart::h, layout_, sizeof(Real))),
       column_memory_(layout_, layer_sizes(problem, LayerPart::moebius_e, layout_, sizeof(Real))),
+      one_way_(problem_, layout_, e_media_, h_media_),
       dipoles_(problem, e_media_, h_media_),
       rows_{group_rows(problem, Axis::x), group_rows(problem, Axis::y),
             rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
@@ -107,7 +116,17 @@ std::size_t Marcher<Real>::layer_bytes() const {
   std::size_t sum = 0;
   for (const LayerPart part : {LayerPart::cfs_e, LayerPart::h, LayerPart::moebius_e})
     sum += LayerMemory<Real>::bytes(layout_, layer_sizes(problem_, part, layout_, sizeof(Real)));
-  return sum;
+  return sum + OneWayWalls<Real>::bytes(problem_, layout_);
+}
+
+template <class Real>
+std::vector<std::span<Real>> Marcher<Real>::state() {
+  std::vector<std::span<Real>> all;
+  for (Component c : all_components) all.push_back(fields_.values(c));
+  for (LayerMemory<Real>* memory : {&e_memory_, &h_memory_, &column_memory_})
+    for (const std::span<Real> part : memory->values()) all.push_back(part);
+  one_way_.append_state(all);
+  return all;
 }
 
 /// Tangential H on the far side of a magnetic wall: the mirror image with its sign turned.
@@ -269,7 +288,12 @@ void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* differ
 
 template <class Real>
 void Marcher<Real>::advance_e(const RowBlock& block) {
-  // A block of more than one plane or row is a layer's; one of a single node may be.
+  // The row next to a one_way wall comes before the row on it.
+  const auto in_order = [&](Axis axis, int index, int begin, int end) {
+    return begin == 0 && end > 1 && kind(side_of(axis, false)) == FaceKind::one_way ? begin + end - 1 - index
+                                                                                    : index;
+  };
+  // A block of more than one plane or row is mostly a layer's; one of a single node may be.
   const auto in_layer = [&](Axis axis, int index) {
     const std::size_t a = axis == Axis::x ? 0 : 1;
     return column_slot_[a][static_cast<std::size_t>(index)] >= 0;
@@ -277,7 +301,9 @@ void Marcher<Real>::advance_e(const RowBlock& block) {
   const bool x = in_layer(Axis::x, block.i0), y = in_layer(Axis::y, block.j0);
   if (!x && !y) {
     for (int j = block.j0; j < block.j1; ++j)
-      for (int i = block.i0; i < block.i1; ++i) advance_e_row(i, j, {}, layout_.row);
+      for (int i = block.i0; i < block.i1; ++i)
+        advance_e_row(in_order(Axis::x, i, block.i0, block.i1), in_order(Axis::y, j, block.j0, block.j1), {},
+                      layout_.row);
     return;
   }
   const std::ptrdiff_t pair = 2 * layout_.row;
@@ -287,19 +313,22 @@ void Marcher<Real>::advance_e(const RowBlock& block) {
   if (scratch.size() < needed) scratch = AlignedArray<Real>(needed);
   Real* const x_pairs = scratch.data();
   Real* const y_pairs = x_pairs + n_i * pair;
-  const auto is_high = [&](Axis axis, int index) {
+  const auto on_high_side = [&](Axis axis, int index) {
     return columns(axis, true).cells() > 0 && index >= columns(axis, true).nodes().begin;
   };
   if (y)
     for (int i = block.i0; i < block.i1; ++i)
-      solve_columns(Axis::y, is_high(Axis::y, block.j0), i, y_pairs + (i - block.i0) * n_j * pair, pair);
-  for (int j = block.j0; j < block.j1; ++j) {
-    if (x) solve_columns(Axis::x, is_high(Axis::x, block.i0), j, x_pairs, pair);
-    for (int i = block.i0; i < block.i1; ++i)
+      solve_columns(Axis::y, on_high_side(Axis::y, block.j0), i, y_pairs + (i - block.i0) * n_j * pair, pair);
+  for (int j_turn = block.j0; j_turn < block.j1; ++j_turn) {
+    const int j = in_order(Axis::y, j_turn, block.j0, block.j1);
+    if (x) solve_columns(Axis::x, on_high_side(Axis::x, block.i0), j, x_pairs, pair);
+    for (int i_turn = block.i0; i_turn < block.i1; ++i_turn) {
+      const int i = in_order(Axis::x, i_turn, block.i0, block.i1);
       advance_e_row(i, j,
                     {x ? x_pairs + (i - block.i0) * pair : nullptr,
                      y ? y_pairs + ((i - block.i0) * n_j + (j - block.j0)) * pair : nullptr},
                     n_i > 1 ? layout_.plane : layout_.row);
+    }
   }
 }
 
@@ -351,6 +380,7 @@ void Marcher<Real>::advance_e_row(int i, int j, const Given& given, std::ptrdiff
   if (surface_is_active_ && surface_->touches_e(i, j)) surface_->add_e(i, j, t.own);
   if (!dipoles_.empty()) dipoles_.add_e(i, j, t.own);
   hold_z_walls(t);
+  if (!one_way_.empty()) one_way_.finish_row(i, j, moving_to_, fields_);
   if (captures_) captures_->take(true, i, j, fields_);
 }
 
@@ -381,6 +411,7 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
     for (long s = first; s <= last; ++s) {
 #pragma omp single
       {
+        moving_to_ = s;
         surface_is_active_ = surface_ && surface_->wave().is_active(s);
         if (surface_) surface_->begin_step();
         dipoles_.prepare(s);

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <memory>
+#include <span>
 
 #include "solver/fields.hpp"
 #include "solver/illumination/dipole_rows.hpp"
@@ -13,6 +14,7 @@
 #include "solver/row_kernels.hpp"
 #include "solver/schedule.hpp"
 #include "solver/shell/moebius.hpp"
+#include "solver/shell/one_way.hpp"
 #include "solver/shell/stretch.hpp"
 
 namespace wanewall {
@@ -32,6 +34,9 @@ class Marcher : public RowWork {
   long step() const { return step_; }
   Fields<Real>& fields() { return fields_; }
   const Fields<Real>& fields() const { return fields_; }
+  /// Everything that the next step depends on beside step(), in a fixed order: fields, layer memory, the past
+  /// of one-way walls.
+  std::vector<std::span<Real>> state();
   const MediaRows<Real>& e_media() const { return e_media_; }
   const MediaRows<Real>& h_media() const { return h_media_; }
   /// The plane wave's surface; null without one.
@@ -82,6 +87,7 @@ class Marcher : public RowWork {
   std::array<std::vector<int>, 2> column_slot_;        // of nodes in Moebius layers along x and y, else -1
   std::array<std::array<ZWindow, 2>, 2> z_windows_{};  // [E, H][low, high]
   LayerMemory<Real> e_memory_, h_memory_, column_memory_;
+  OneWayWalls<Real> one_way_;
   std::unique_ptr<TotalFieldSurface<Real>> surface_;
   DipoleRows<Real> dipoles_;
   bool surface_is_active_ = false;
@@ -89,6 +95,7 @@ class Marcher : public RowWork {
   RowGroups rows_;
   std::vector<int> slabs_;
   long step_ = 0;
+  long moving_to_ = 0;  ///< the step being made
 };
 
 }  // namespace wanewall

@@ -122,6 +122,7 @@ Footprint footprint_as(const Problem& problem) {
   for (const LayerPart part : {LayerPart::cfs_e, LayerPart::h, LayerPart::moebius_e})
     footprint.layer_memory += static_cast<double>(
         LayerMemory<Real>::bytes(layout, layer_sizes(problem, part, layout, sizeof(Real))));
+  footprint.layer_memory += static_cast<double>(OneWayWalls<Real>::bytes(problem, layout));
   for (const bool electric : {true, false})
     footprint.media += static_cast<double>(MediaRows<Real>(problem, layout, electric, threads).bytes());
   footprint.audit = AuditRecorder<Real>::bytes(problem);

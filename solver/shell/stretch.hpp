@@ -5,6 +5,8 @@
 // Source: J. A. Roden and S. D. Gedney, Microw. Opt. Technol. Lett. 27, 334 (2000).
 #pragma once
 
+#include <array>
+#include <span>
 #include <vector>
 
 #include "solver/aligned_array.hpp"
@@ -64,6 +66,10 @@ class LayerMemory {
   std::ptrdiff_t x_stride() const { return (layout_.ny + 1L) * rows_per_slot_ * layout_.row; }
   std::ptrdiff_t y_stride() const { return rows_per_slot_ * layout_.row; }
   int z_values() const { return z_values_; }
+  /// All of it: across x, across y, along z.
+  std::array<std::span<Real>, 3> values() {
+    return {std::span<Real>{x_.data(), x_.size()}, {y_.data(), y_.size()}, {z_.data(), z_.size()}};
+  }
   static std::size_t bytes(const RowLayout& layout, const LayerSizes& sizes);
 
  private:
