@@ -1,5 +1,5 @@
 // Moebius layers: silent interface, R = -product of squared cell factors, on every axis, with corners.
-#include <Eigen/Eigenvalues>
+#include <Eigen/Dense>
 #include <catch2/catch.hpp>
 #include <complex>
 #include <random>
@@ -70,8 +70,8 @@ Complex product(const MoebiusTable& table, double cell_m, double dt_s, double om
 TEST_CASE("A Moebius layer reflects the product of its cells and nothing else", "[moebius][shell]") {
   ColumnRequest request;
   // Long rows make short runs: along x and y the guide's width lies along z.
-  const auto axes = GENERATE(std::pair{Axis::z, Axis::x}, std::pair{Axis::x, Axis::z},
-                             std::pair{Axis::y, Axis::z});
+  const auto axes =
+      GENERATE(std::pair{Axis::z, Axis::x}, std::pair{Axis::x, Axis::z}, std::pair{Axis::y, Axis::z});
   request.along = axes.first;
   request.across = axes.second;
   request.high = GENERATE(true, false);
@@ -151,9 +151,11 @@ TEST_CASE("The order of a Moebius layer's cells changes nothing beyond rounding"
     turn(face.moebius.alpha_s_per_m);
   }
   const std::vector<double> other = clear_fields(p, 260);
-  CAPTURE(largest(one), largest_difference(one, other));
-  CHECK(largest(one) > 0.0);
-  CHECK(largest_difference(one, other) < 1e-11 * largest(one));
+  // Rounding is a part of the largest field there was, not of what is left in the end.
+  const double scale = largest(clear_fields(p, 80));
+  CAPTURE(scale, largest(one), largest_difference(one, other));
+  CHECK(largest(one) > 1e-9 * scale);
+  CHECK(largest_difference(one, other) < 1e-13 * scale);
 }
 
 TEST_CASE("Moebius cells that neither stretch nor absorb are plain lattice", "[moebius]") {
@@ -183,10 +185,14 @@ TEST_CASE("The whole step of a box of Moebius corners has no growing mode at 0.9
   // Which of the values take part: those that a shaken lattice moves.
   std::mt19937 random(seed);
   std::uniform_real_distribution<double> uniform(-1.0, 1.0);
+  const auto inside = [&](Component c, Axis a) {  // tangential E on the outer walls is zero from the start
+    IndexRange range = p.lattice.stored(c, a);
+    return is_electric(c) && !is_half(c, a) ? IndexRange{range.begin + 1, range.end - 1} : range;
+  };
   for (Component c : all_components)
-    for (int i = p.lattice.stored(c, Axis::x).begin; i < p.lattice.stored(c, Axis::x).end; ++i)
-      for (int j = p.lattice.stored(c, Axis::y).begin; j < p.lattice.stored(c, Axis::y).end; ++j)
-        for (int k = p.lattice.stored(c, Axis::z).begin; k < p.lattice.stored(c, Axis::z).end; ++k)
+    for (int i = inside(c, Axis::x).begin; i < inside(c, Axis::x).end; ++i)
+      for (int j = inside(c, Axis::y).begin; j < inside(c, Axis::y).end; ++j)
+        for (int k = inside(c, Axis::z).begin; k < inside(c, Axis::z).end; ++k)
           marcher.fields().row(c, i, j)[k] = uniform(random);
   marcher.advance(4, {});
   std::vector<double*> alive;
@@ -200,11 +206,16 @@ TEST_CASE("The whole step of a box of Moebius corners has no growing mode at 0.9
     marcher.advance(1, {});
     for (Eigen::Index row = 0; row < n; ++row) step(row, column) = *alive[static_cast<std::size_t>(row)];
   }
-  const Eigen::VectorXcd eigenvalues = Eigen::EigenSolver<Eigen::MatrixXd>(step, false).eigenvalues();
-  const double most = eigenvalues.cwiseAbs().maxCoeff();
-  CAPTURE(n, (most - 1.0) * 1e15);
+  // An eigenvalue solver would lose half the digits at the many static modes (all at 1). Powers do not: with
+  // nothing beyond 1 + 1e-12, the 2^33-th is at most exp(2^33 1e-12) = 1.0086 times the 2^20-th.
+  double earlier = 0.0;
+  for (int doubling = 0; doubling < 33; ++doubling) {
+    if (doubling == 20) earlier = step.norm();
+    step = (step * step).eval();
+  }
+  CAPTURE(n, earlier, step.norm() / earlier);
   CHECK(n > 300);
-  CHECK(most <= 1.0 + 1e-12);
+  CHECK(step.norm() <= 1.0086 * earlier);
 }
 
 TEST_CASE("Interior noise does not grow in a Moebius shell", "[moebius]") {
