@@ -4,12 +4,12 @@
 # pictures of the error against time, and one summary. Needs the built program; pictures need gnuplot-nox.
 #   bash cases/shell_benchmarks.sh [--out FOLDER] [--scenes "square box ..."] [--kinds "moebius ..."] [--cells "5 8 ..."]
 #                                  [--large] [--program PATH]
-#   --scenes   square, plate, box, long_box, ground, slab, long_run; default: square box ground
+#   --scenes   square, plate, box, long_box, ground, slab, sphere, long_run; default: square box ground
 #   --kinds    moebius, cfs_searched, cfs_m3, cfs_m4, cfs_plate, matched_slab; default: all
 #   --cells    of the shell; default: 5 8 10 16
-#   --large    compare box with a lattice so large that nothing returns: 3 GB, about an hour on two cores
-# References: square (and box with --large) against a lattice so large that nothing returns before the end; the others
-# against the scene's witness, whose predicted floor stands in witness.txt. The summary says which.
+#   --large    compare box and sphere with lattices so large that nothing returns: 3 GB, some ten minutes each on two cores
+# References: square (and box and sphere with --large) against a lattice so large that nothing returns before the end; the
+# others against the scene's witness, whose predicted floor stands in SCENE_witness.txt. The summary says which.
 set -euo pipefail
 root=$(cd "$(dirname "${BASH_SOURCE[0]}")/.." && pwd)
 out=$root/build/shell_benchmarks
@@ -55,8 +55,9 @@ shell_of() {
 large_volume_of() {
   case $1 in
     square) echo "{x: [0 mm, 1 mm], y: [-301 mm, 341 mm], z: [-301 mm, 341 mm]}" ;;
-    # 600 steps last 343 cells at the speed of light.
+    # 600 steps last 343 cells at the speed of light, 500 steps 286.
     box) echo "{x: [-176 mm, 200 mm], y: [-176 mm, 200 mm], z: [-176 mm, 200 mm]}" ;;
+    sphere) echo "{x: [-146 mm, 176 mm], y: [-146 mm, 166 mm], z: [-146 mm, 162 mm]}" ;;
   esac
 }
 
@@ -79,7 +80,7 @@ export program
 
 reference_of() { # makes SCENE_reference.h5 and says what it is
   local scene=$1
-  if [ "$scene" = square ] || { [ "$scene" = box ] && [ "$large" = yes ]; }; then
+  if [ "$scene" = square ] || { [ -n "$(large_volume_of "$scene")" ] && [ "$large" = yes ]; }; then
     variant "$scene" "{kind: electric_wall}" "${scene}_reference.yaml" "$(large_volume_of "$scene")"
     run "${scene}_reference" >&2
     echo "large lattice"

@@ -94,16 +94,17 @@ bool is_at(const Vec3& a_m, const Vec3& b_m, double tolerance_m) {
   return true;
 }
 
-/// Whether the mesh lines that a point's values are taken from are the same in both.
+/// Whether the mesh lines that a point's values are taken from are the same in both: those within a cell and
+/// a half of it.
 bool same_lines_around(const Lattice& a, const Lattice& b, const Vec3& point_m, double tolerance_m) {
   for (const Axis axis : all_axes) {
+    const MeshLines &lines = a.along(axis), &others = b.along(axis);
     const double at_m = point_m[static_cast<std::size_t>(index_of(axis))];
-    const int i = a.along(axis).nearest_node(at_m), j = b.along(axis).nearest_node(at_m);
-    for (int d = -1; d <= 1; ++d) {
-      const bool in_a = i + d >= 0 && i + d < a.along(axis).nodes();
-      const bool in_b = j + d >= 0 && j + d < b.along(axis).nodes();
-      if (in_a && in_b &&
-          !(std::abs(a.along(axis).node_m(i + d) - b.along(axis).node_m(j + d)) <= tolerance_m))
+    for (const double node_m : lines.all_m()) {
+      const bool is_near = std::abs(node_m - at_m) < 1.5 * lines.largest_cell_m();
+      const bool is_in_both = others.all_m().front() <= node_m && node_m <= others.all_m().back();
+      if (is_near && is_in_both &&
+          !(std::abs(others.node_m(others.nearest_node(node_m)) - node_m) <= tolerance_m))
         return false;
     }
   }

@@ -1,18 +1,15 @@
 #include "solver/shell/witness.hpp"
 
 #include <algorithm>
-#include <cmath>
-#include <complex>
 #include <deque>
 #include <limits>
-#include <set>
 #include <string>
 #include <utility>
 #include <vector>
 
 #include "geometry/constants.hpp"
-#include "geometry/painter.hpp"
 #include "solver/shell/design.hpp"
+#include "solver/shell/surroundings.hpp"
 
 namespace wanewall {
 namespace {
@@ -37,79 +34,16 @@ std::vector<double> shell_nodes_m(const Lattice& lattice, Side side, int cells) 
   return nodes_m;
 }
 
-/// Media that touch a face, sampled at the middle of every cell of its plane.
-std::set<int> media_at(const Problem& problem, Side side) {
-  const Painter painter(problem.lattice, problem.media, problem.objects, problem.background);
-  const Axis normal = axis_of(side), u = next(normal), v = previous(normal);
-  const auto at = [](Axis a) { return static_cast<std::size_t>(index_of(a)); };
-  Vec3 point_m{};
-  point_m[at(normal)] = problem.lattice.along(normal).node_m(problem.lattice.clear_node(side));
-  std::set<int> media;
-  for (int i = 0; i < problem.lattice.cells(u); ++i) {
-    for (int j = 0; j < problem.lattice.cells(v); ++j) {
-      point_m[at(u)] = problem.lattice.along(u).half_m(i);
-      point_m[at(v)] = problem.lattice.along(v).half_m(j);
-      media.insert(painter.medium_at(point_m));
-    }
-  }
-  return media;
-}
-
-/// The pulse of whatever lights the problem; null when nothing does.
-const Pulse* pulse_of(const Problem& problem) {
-  if (problem.plane_wave) return &problem.plane_wave->pulse;
-  return problem.dipoles.empty() ? nullptr : &problem.dipoles.front().pulse;
-}
-
-double largest_index(const Problem& problem, const std::set<int>& media, double frequency_hz) {
-  double index = 1.0;
-  for (const int m : media) {
-    const Medium& medium = problem.media.at(static_cast<std::size_t>(m));
-    if (medium.is_perfect()) continue;
-    const std::complex<double> permittivity(
-        medium.permittivity_rel, -medium.conductivity_s_per_m / (2.0 * pi * frequency_hz * eps0_f_per_m));
-    index = std::max(index, std::sqrt(std::abs(permittivity) * medium.permeability_rel));
-  }
-  return index;
-}
-
-/// Cautious throughout: one cell of clearance, the pulse down to -80 dB of its peak, and waves slow enough
-/// for what is left behind when the run is long.
-DesignInputs witness_inputs(const Problem& problem, Side side, double cell_m) {
-  constexpr double pulse_end_level = 1e-4;
-  constexpr double largest_wavelength_cells = 20000.0;
-  const double dt_s = problem.lattice.dt_s;
-  DesignInputs inputs;
-  inputs.courant = c0_m_per_s * dt_s / cell_m;
-  double diagonal2 = 0.0;
-  for (const Axis axis : all_axes) {
-    if (problem.lattice.periodic[static_cast<std::size_t>(index_of(axis))]) continue;
-    const MeshLines& lines = problem.lattice.along(axis);
-    const double length_m = lines.node_m(problem.lattice.clear_node(side_of(axis, true))) -
-                            lines.node_m(problem.lattice.clear_node(side_of(axis, false)));
-    diagonal2 += length_m * length_m;
-  }
-  inputs.diagonal_cells = std::sqrt(diagonal2) / cell_m;
-  inputs.clearance_cells = 1.0;
-  inputs.alpha_min = 0.12 / inputs.diagonal_cells;
-
-  const Pulse* pulse = pulse_of(problem);
-  const double highest_hz = pulse != nullptr ? spectrum_end_hz(*pulse, pulse_end_level) : 0.0;
-  const double shortest_cells = highest_hz > 0.0 ? std::max(2.5, c0_m_per_s / (highest_hz * cell_m)) : 10.0;
-  double longest_cells = std::max({300.0, 8.0 * inputs.diagonal_cells, 2.0 * shortest_cells});
-  const bool is_long = static_cast<double>(problem.last_step()) > 2.0 * longest_cells / inputs.courant;
-  if (is_long) longest_cells = std::max(longest_cells, largest_wavelength_cells);
-  const int n = is_long ? 18 : 12;
-  const std::set<int> media = media_at(problem, side);
-  for (int i = 0; i < n; ++i) {
-    const double cells = shortest_cells * std::pow(longest_cells / shortest_cells, i / (n - 1.0));
-    inputs.frequencies.push_back({cells, largest_index(problem, media, c0_m_per_s / (cells * cell_m))});
-  }
-  return inputs;
+/// As for any designed layer, but as if something stood right in front of the face.
+DesignInputs witness_inputs(const Problem& problem, const ShellSurroundings& surroundings, Side side) {
+  DesignOverrides cautious;
+  cautious.clearance_cells = 1.0;
+  return design_inputs(problem, surroundings, side, cautious);
 }
 
 bool are_equal(const DesignInputs& a, const DesignInputs& b) {
-  return a.courant == b.courant && a.diagonal_cells == b.diagonal_cells &&
+  return a.courant == b.courant && a.diagonal_cells == b.diagonal_cells && a.alpha_min == b.alpha_min &&
+         a.clearance_cells == b.clearance_cells &&
          std::equal(a.frequencies.begin(), a.frequencies.end(), b.frequencies.begin(), b.frequencies.end(),
                     [](const DesignFrequency& f, const DesignFrequency& g) {
                       return f.wavelength_cells == g.wavelength_cells && f.index == g.index;
@@ -119,8 +53,11 @@ bool are_equal(const DesignInputs& a, const DesignInputs& b) {
 /// Layers designed face by face; faces that need the same share one.
 class WitnessLayers {
  public:
-  const Designed<MoebiusTable>& layer_for(const Problem& problem, Side side, double cell_m) {
-    const DesignInputs inputs = witness_inputs(problem, side, cell_m);
+  explicit WitnessLayers(const Problem& problem)
+      : problem_(problem), surroundings_(surroundings_of(problem, band_without_a_pulse_hz(problem))) {}
+
+  const Designed<MoebiusTable>& layer_for(Side side, double cell_m) {
+    const DesignInputs inputs = witness_inputs(problem_, surroundings_, side);
     for (const auto& [known, designed] : layers_)
       if (are_equal(known, inputs)) return designed;
     layers_.emplace_back(inputs, design_moebius(inputs, witness_cells, cell_m));
@@ -128,6 +65,13 @@ class WitnessLayers {
   }
 
  private:
+  /// Ten cells per wavelength; without a pulse there is nothing to see.
+  static double band_without_a_pulse_hz(const Problem& problem) {
+    return c0_m_per_s / (10.0 * problem.lattice.lines[0].largest_cell_m());
+  }
+
+  const Problem& problem_;
+  ShellSurroundings surroundings_;
   std::deque<std::pair<DesignInputs, Designed<MoebiusTable>>> layers_;
 };
 
@@ -142,7 +86,7 @@ FaceChoice absorbing_faces(const Problem& problem) {
 Witness with_witness_shell(const Problem& problem, const FaceChoice& faces) {
   Witness result{problem, -std::numeric_limits<double>::infinity(), Side::x_lo};
   Problem& witness = result.problem;
-  WitnessLayers layers;
+  WitnessLayers layers(problem);
   for (const Side side : all_sides) {
     if (!faces[index(side)]) continue;
     if (!absorbs(problem.face(side).kind))
@@ -153,7 +97,7 @@ Witness with_witness_shell(const Problem& problem, const FaceChoice& faces) {
     const double cell_m = lines.cell_m(is_high(side) ? lines.cells() - 1 : 0);
     Face face;
     face.kind = FaceKind::moebius;
-    const Designed<MoebiusTable>& designed = layers.layer_for(problem, side, cell_m);
+    const Designed<MoebiusTable>& designed = layers.layer_for(side, cell_m);
     face.moebius = designed.table;
     if (designed.figures.worst_db > result.floor_db) {
       result.floor_db = designed.figures.worst_db;
