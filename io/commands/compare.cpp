@@ -92,13 +92,11 @@ std::string comparison_text(const Outcome& outcome) {
 }
 
 constexpr const char* how_to_read =
-    "- Peak error: largest |F - F_ref| over time against the largest |F_ref|, for F = E and F = H as "
-    "vectors; rms\n"
-    "  error: root mean square over time of the one against that of the other.\n"
-    "- `equal`: no difference at all. `no level`: the reference is zero there, or a difference is not "
-    "finite.\n"
-    "- Audit sums are kept in single precision, so differences below about -130 dB cannot be seen in "
-    "them.\n\n";
+    R"(- Peak error: largest |F - F_ref| over time against the largest |F_ref|, for F = E and F = H as vectors; rms
+  error: root mean square over time of the one against that of the other.
+- `equal`: no difference at all. `no level`: the reference is zero there, or a difference is not finite.
+
+)";
 
 const PointError* point_for_picture(const Comparison& comparison, const std::string& name) {
   if (name.empty()) return worst_point(comparison);
