@@ -1,8 +1,10 @@
 // wanewall shell: what the shell will reflect, and what it should be made of.
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <chrono>
 #include <cmath>
+#include <cstdio>
 #include <iostream>
 #include <memory>
 #include <string>
@@ -16,6 +18,7 @@
 #include "io/scene.hpp"
 #include "io/shell_document.hpp"
 #include "io/terminal.hpp"
+#include "solver/shell/column_run.hpp"
 
 namespace wanewall {
 namespace {
@@ -83,6 +86,83 @@ ExitCode design_command(const DesignOptions& options) {
   return ExitCode::done;
 }
 
+struct MeasureOptions {
+  std::string scene_path;
+  std::vector<double> angles_deg{0.0, 30.0, 60.0, 75.0};
+  std::vector<double> cells_per_wavelength{20.0};
+};
+
+bool same_layer(const Face& a, const Face& b) {
+  return a.kind == b.kind && a.one_way_order == b.one_way_order && a.moebius.kappa == b.moebius.kappa &&
+         a.moebius.sigma_s_per_m == b.moebius.sigma_s_per_m &&
+         a.moebius.alpha_s_per_m == b.moebius.alpha_s_per_m &&
+         a.layer.sigma_e_s_per_m == b.layer.sigma_e_s_per_m &&
+         a.layer.sigma_h_s_per_m == b.layer.sigma_h_s_per_m && a.layer.kappa_e == b.layer.kappa_e &&
+         a.layer.alpha_e_s_per_m == b.layer.alpha_e_s_per_m;
+}
+
+ExitCode measure_command(const MeasureOptions& options) {
+  const Scene scene = read_scene(options.scene_path);
+  const Problem& problem = scene.problem;
+  fmt::print("# Reflection of single faces, read from the march\n\n");
+  fmt::print(
+      "One mode of a guide that ends in the face, in vacuum, double precision; predicted: the exact lattice "
+      "reflection of the same wave.\nTime step {}.\n\n",
+      format_quantity(problem.lattice.dt_s, Family::time, 6));
+  fmt::print("| {:<6} | {:<12} | {:>5} | {:>6} | {:>6} | {:<3} | {:>14} | {:>14} | {:>16} |\n", "faces",
+             "kind", "cells", "angle", "cells/wl", "pol", "measured [dB]", "predicted [dB]",
+             "difference [dB]");
+  fmt::print("| {:-<6} | {:-<12} | {:->4}: | {:->5}: | {:->7}: | {:-<3} | {:->13}: | {:->13}: | {:->15}: |\n",
+             "", "", "", "", "", "", "", "", "");
+  std::vector<Side> done;
+  bool any = false;
+  for (Side side : all_sides) {
+    const Face& face = problem.face(side);
+    const double cell_m = problem.lattice.along(axis_of(side)).smallest_cell_m();
+    if (!absorbs(face.kind)) continue;
+    const auto alike = [&](Side other) {
+      return same_layer(problem.face(other), face) &&
+             problem.lattice.along(axis_of(other)).smallest_cell_m() == cell_m;
+    };
+    if (std::any_of(done.begin(), done.end(), alike)) continue;
+    done.push_back(side);
+    any = true;
+    std::string names;
+    for (Side other : all_sides)
+      if (alike(other)) names += fmt::format("{}{}", names.empty() ? "" : " ", name_of(other));
+    ColumnRequest request;
+    request.face = face;
+    request.along = axis_of(side);
+    // Rows lie along z, so the guide's width does too where it can.
+    request.across = request.along == Axis::z ? Axis::x : Axis::z;
+    request.high = side == side_of(request.along, true);
+    request.cell_m = cell_m;
+    request.across_m = problem.lattice.along(request.across).smallest_cell_m();
+    request.dt_s = problem.lattice.dt_s;
+    for (const double cells : options.cells_per_wavelength)
+      for (const double angle_deg : options.angles_deg)
+        for (const Polarisation polarisation : both_polarisations) {
+          request.angle_rad = angle_deg * degree;
+          request.cells_per_wavelength = cells;
+          request.polarisation = polarisation;
+          const ColumnReading reading = read_column(request);
+          const double measured_db = 20.0 * std::log10(std::abs(reading.reflection));
+          const double predicted_db =
+              20.0 *
+              std::log10(std::abs(face_reflection(face, request.medium, cell_m, reading.dt_s, reading.wave)));
+          fmt::print(
+              "| {:<6} | {:<12} | {:>5} | {:>6.1f} | {:>8.2f} | {:<3} | {:>14.3f} | {:>14.3f} | {:>16.4f} "
+              "|\n",
+              names, name_of(face.kind), face.cells(), angle_deg, reading.cells_per_wavelength,
+              polarisation == Polarisation::te ? "TE" : "TM", measured_db, predicted_db,
+              measured_db - predicted_db);
+          std::fflush(stdout);
+        }
+  }
+  if (!any) fmt::print("No face of this scene absorbs.\n");
+  return ExitCode::done;
+}
+
 }  // namespace
 
 void add_shell_command(CLI::App& app, Action& action) {
@@ -91,7 +171,8 @@ void add_shell_command(CLI::App& app, Action& action) {
   shell->footer(
       "Examples:\n"
       "  wanewall shell predict drum.yaml\n"
-      "  wanewall shell design drum.yaml");
+      "  wanewall shell design drum.yaml\n"
+      "  wanewall shell measure drum.yaml");
 
   auto predict_options = std::make_shared<PredictOptions>();
   CLI::App* predict = shell->add_subcommand("predict", "The exact reflection of every face, before any run");
@@ -103,6 +184,25 @@ void add_shell_command(CLI::App& app, Action& action) {
       "  wanewall shell predict drum.yaml --csv shell.csv --picture shell.svg");
   predict->callback([predict_options, &action] {
     action = [predict_options] { return predict_command(*predict_options); };
+  });
+
+  auto measure_options = std::make_shared<MeasureOptions>();
+  CLI::App* measure =
+      shell->add_subcommand("measure", "March single waves into every face and compare with the prediction");
+  measure->add_option("scene", measure_options->scene_path, "Scene file (YAML)")->required();
+  measure->add_option("--angles", measure_options->angles_deg, "Angles of incidence in degrees, 0 to 85")
+      ->check(CLI::Range(0.0, 85.0))
+      ->capture_default_str();
+  measure
+      ->add_option("--cells-per-wavelength", measure_options->cells_per_wavelength,
+                   "Cells per wavelength in vacuum; the nearest that fits a guide is used")
+      ->check(CLI::Range(6.0, 200.0))
+      ->capture_default_str();
+  measure->footer(
+      "Example:\n"
+      "  wanewall shell measure drum.yaml --angles 0 45 70 --cells-per-wavelength 12 20");
+  measure->callback([measure_options, &action] {
+    action = [measure_options] { return measure_command(*measure_options); };
   });
 
   auto design_options = std::make_shared<DesignOptions>();

@@ -20,17 +20,20 @@ constexpr int gap = 6;  ///< cells from the reading to the face
 
 class Guide {
  public:
-  explicit Guide(const ColumnRequest& request) : request_(request) {
+  explicit Guide(const ColumnRequest& request)
+      : request_(request),
+        across_m_(request.across_m > 0.0 ? request.across_m : request.cell_m),
+        dt_s_(request.dt_s > 0.0 ? request.dt_s : 0.99 * request.cell_m / (c0_m_per_s * std::sqrt(3.0))) {
     const double wavelengths = request.cells_per_wavelength;
     if (request.angle_rad > 0.0)
-      width_ = std::max(4, static_cast<int>(std::lround(0.5 * wavelengths / std::sin(request.angle_rad))));
-    dt_s_ = problem(gap, Face{}).lattice.dt_s;
+      width_ = std::max(4, static_cast<int>(std::lround(0.5 * wavelengths * request.cell_m /
+                                                        (std::sin(request.angle_rad) * across_m_))));
     const double index = std::sqrt(request.medium.permittivity_rel * request.medium.permeability_rel);
     const auto omega_at = [&](double k_per_m) {
       return 2.0 / dt_s_ * std::asin(std::min(1.0, 0.5 * c0_m_per_s * dt_s_ / index * k_per_m));
     };
     if (request.angle_rad > 0.0) {
-      kt_per_m_ = 2.0 / request.cell_m * std::sin(0.5 * pi / width_);
+      kt_per_m_ = 2.0 / across_m_ * std::sin(0.5 * pi / width_);
       cutoff_ = omega_at(kt_per_m_);
       omega_ = omega_at(kt_per_m_ / std::sin(request.angle_rad));
     } else {
@@ -60,8 +63,7 @@ class Guide {
     p.lattice.shell_cells[static_cast<std::size_t>(index_of(side))] = cells;
     set_periodic(p, third());
     if (width_ == 1) set_periodic(p, request_.across);
-    // The Courant number of a cube of cells, whatever is periodic here.
-    p.lattice.dt_s = request_.courant * request_.cell_m / (c0_m_per_s * std::sqrt(3.0));
+    p.lattice.dt_s = dt_s_;
     return p;
   }
 
@@ -78,7 +80,7 @@ class Guide {
       if (width_ > 1) shape = te() ? std::sin(pi * place / width_) : std::cos(pi * place / width_);
       if (shape == 0.0) continue;
       dipole.position_m[at(request_.along)] = position_m(p, te() ? node : node + 0.5);
-      dipole.position_m[at(request_.across)] = place * request_.cell_m;
+      dipole.position_m[at(request_.across)] = place * across_m_;
       dipole.position_m[at(third())] = te() ? 0.5 * request_.cell_m : 0.0;
       dipole.moment[at(third())] = shape;
       p.dipoles.push_back(dipole);
@@ -116,8 +118,9 @@ class Guide {
   }
 
   const ColumnRequest& request_;
+  double across_m_, dt_s_;
   int width_ = 1;
-  double dt_s_ = 0.0, omega_ = 0.0, cutoff_ = 0.0, kt_per_m_ = 0.0;
+  double omega_ = 0.0, cutoff_ = 0.0, kt_per_m_ = 0.0;
 };
 
 }  // namespace

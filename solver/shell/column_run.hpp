@@ -18,10 +18,11 @@ struct ColumnRequest {
   Face face;
   Medium medium{"vacuum", 1.0, 1.0, 0.0, 0.0, false, false};  ///< lossless; fills guide and layer
   Axis along = Axis::z;                                       ///< the face's normal
-  Axis across = Axis::x;  ///< the axis between the electric walls; another one
-  bool high = true;       ///< the face is at the high end
-  double cell_m = 1e-3;
-  double courant = 0.99;
+  Axis across = Axis::x;   ///< the axis between the electric walls; another one
+  bool high = true;        ///< the face is at the high end
+  double cell_m = 1e-3;    ///< along the normal
+  double across_m = 0.0;   ///< along `across`; 0: as along the normal
+  double dt_s = 0.0;       ///< 0: 0.99 of the limit of a cube of such cells
   double angle_rad = 0.0;  ///< 0 <= angle < pi/2
   /// The guide is a whole number of cells wide, so the frequency is the nearest that fits the angle.
   double cells_per_wavelength = 20.0;
