@@ -106,7 +106,8 @@ ExitCode measure_command(const MeasureOptions& options) {
   const Problem& problem = scene.problem;
   fmt::print("# Reflection of single faces, read from the march\n\n");
   fmt::print(
-      "One mode of a guide that ends in the face, in vacuum, double precision; predicted: the exact lattice "
+      "One mode of a guide along z that ends in the face's layer, in vacuum, double precision; predicted: "
+      "the exact lattice "
       "reflection of the same wave.\nTime step {}.\n\n",
       format_quantity(problem.lattice.dt_s, Family::time, 6));
   fmt::print("| {:<6} | {:<12} | {:>5} | {:>6} | {:>6} | {:<3} | {:>14} | {:>14} | {:>16} |\n", "faces",
@@ -132,12 +133,9 @@ ExitCode measure_command(const MeasureOptions& options) {
       if (alike(other)) names += fmt::format("{}{}", names.empty() ? "" : " ", name_of(other));
     ColumnRequest request;
     request.face = face;
-    request.along = axis_of(side);
-    // Rows lie along z, so the guide's width does too where it can.
-    request.across = request.along == Axis::z ? Axis::x : Axis::z;
-    request.high = side == side_of(request.along, true);
+    // Rows lie along z: there a long guide runs fastest, and a layer does not know its axis.
     request.cell_m = cell_m;
-    request.across_m = problem.lattice.along(request.across).smallest_cell_m();
+    request.across_m = problem.lattice.along(next(axis_of(side))).smallest_cell_m();
     request.dt_s = problem.lattice.dt_s;
     for (const double cells : options.cells_per_wavelength)
       for (const double angle_deg : options.angles_deg)
