@@ -35,15 +35,21 @@ void plain_row(RowTask<Real> t, bool electric) {
       const auto along_z = [&](const Real* here) {
         return t.inv_z[k] * (electric ? here[k] - here[k - 1] : here[k + 1] - here[k]);
       };
-      const auto stretch = [&](Real d, Real inv, Real b, Real c, Real* psi) {
+      const auto stretch = [&](Real d, Real inv, Real b, Real c, Real* psi, bool late, const Real* given) {
+        if (given) return inv * given[k];
         if (!psi) return inv * d;
-        psi[k] = b * psi[k] + c * d;
-        return inv * d + psi[k];
+        const Real old = psi[k];
+        psi[k] = b * old + c * d;
+        return inv * d + (late ? old : psi[k]);
       };
-      const Real dy_z = stretch(difference(t.other[2], t.beside_y[2]), t.inv_y, t.y_b, t.y_c, t.y_psi_second);
-      const Real dy_x = stretch(difference(t.other[0], t.beside_y[0]), t.inv_y, t.y_b, t.y_c, t.y_psi_first);
-      const Real dx_y = stretch(difference(t.other[1], t.beside_x[1]), t.inv_x, t.x_b, t.x_c, t.x_psi_second);
-      const Real dx_z = stretch(difference(t.other[2], t.beside_x[2]), t.inv_x, t.x_b, t.x_c, t.x_psi_first);
+      const Real dy_z = stretch(difference(t.other[2], t.beside_y[2]), t.inv_y, t.y_b, t.y_c, t.y_psi_second,
+                                t.y_late, t.y_given_second);
+      const Real dy_x = stretch(difference(t.other[0], t.beside_y[0]), t.inv_y, t.y_b, t.y_c, t.y_psi_first,
+                                t.y_late, t.y_given_first);
+      const Real dx_y = stretch(difference(t.other[1], t.beside_x[1]), t.inv_x, t.x_b, t.x_c, t.x_psi_second,
+                                t.x_late, t.x_given_second);
+      const Real dx_z = stretch(difference(t.other[2], t.beside_x[2]), t.inv_x, t.x_b, t.x_c, t.x_psi_first,
+                                t.x_late, t.x_given_first);
       const Real dz_y = along_z(t.other[1]), dz_x = along_z(t.other[0]);
       const Real curl[3]{electric ? dy_z - dz_y : dz_y - dy_z, electric ? dz_x - dx_z : dx_z - dz_x,
                          electric ? dx_y - dy_x : dy_x - dx_y};
@@ -62,12 +68,12 @@ void compare(VectorCode code) {
   constexpr int line = Row<Real>::line;
   std::mt19937 random(7);
   for (const int lines : {1, 2, 3, 7}) {
-    for (int variant = 0; variant < 32; ++variant) {
+    for (int variant = 0; variant < 64; ++variant) {
       const bool layer_x = variant & 1, layer_y = variant & 2, mixed = variant & 4, electric = variant & 8,
-                 gap = (variant & 16) && lines > 2;
+                 gap = (variant & 16) && lines > 2, moebius = variant & 32;
       const int n = lines * line;
       std::vector<Row<Real>> rows;
-      for (int r = 0; r < 17; ++r) rows.emplace_back(n, random);
+      for (int r = 0; r < 21; ++r) rows.emplace_back(n, random);
       const Row<Real> coefficients(6 * n, random);
       std::vector<MediaSpan<Real>> spans;
       const auto span = [&](int begin, int end, bool with_arrays) {
@@ -105,12 +111,22 @@ void compare(VectorCode code) {
         task.x_c = Real(-0.4);
         task.x_psi_first = rows[13].k0;
         task.x_psi_second = rows[14].k0;
+        task.x_late = moebius && !electric;
+        if (moebius && electric) {
+          task.x_given_first = rows[17].k0;
+          task.x_given_second = rows[18].k0;
+        }
       }
       if (layer_y) {
         task.y_b = Real(0.6);
         task.y_c = Real(-0.5);
         task.y_psi_first = rows[15].k0;
         task.y_psi_second = rows[16].k0;
+        task.y_late = moebius && !electric;
+        if (moebius && electric) {
+          task.y_given_first = rows[19].k0;
+          task.y_given_second = rows[20].k0;
+        }
       }
       std::vector<std::vector<Real>> before;
       for (const auto& row : rows)
@@ -124,7 +140,7 @@ void compare(VectorCode code) {
       (electric ? kernels.advance_e : kernels.advance_h)(task);
       // Bit for bit, and nothing outside the spans or in the rows that are only read has moved.
       for (std::size_t r = 0; r < rows.size(); ++r) {
-        CAPTURE(kernels.name, lines, layer_x, layer_y, mixed, electric, gap, r);
+        CAPTURE(kernels.name, lines, layer_x, layer_y, mixed, electric, gap, moebius, r);
         REQUIRE(std::memcmp(expected[r].data(), rows[r].memory.data(), expected[r].size() * sizeof(Real)) ==
                 0);
       }

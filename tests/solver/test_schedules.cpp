@@ -34,7 +34,16 @@ void set_moebius(Problem& p, Side side, int cells) {
 }
 
 /// Which faces a scene has; plane waves need sides that let them.
-enum class Kind { all_absorbing, mixed_walls, moebius, moebius_mixed, periodic_x, periodic_y, periodic_z };
+enum class Kind {
+  all_absorbing,
+  mixed_walls,
+  moebius,
+  moebius_mixed,
+  one_way,
+  periodic_x,
+  periodic_y,
+  periodic_z
+};
 
 Problem busy_problem(Kind kind, Precision precision) {
   Problem p = vacuum_problem({37, 29, 45}, {1e-3, 1e-3, 1.2e-3});
@@ -57,6 +66,13 @@ Problem busy_problem(Kind kind, Precision precision) {
     set_face(p, Side::y_hi, FaceKind::magnetic_wall);
     set_moebius(p, Side::z_lo, 7);
     set_face(p, Side::z_hi, FaceKind::electric_wall);
+  }
+  if (kind == Kind::one_way) {
+    for (Side s : all_sides) set_face(p, s, FaceKind::one_way);
+    for (Side s : {Side::x_lo, Side::y_hi, Side::z_lo})
+      p.faces[static_cast<std::size_t>(index_of(s))].one_way_order = 2;
+    set_moebius(p, Side::y_lo, 4);
+    set_face(p, Side::z_hi, FaceKind::cfs_pml, layer(5));
   }
   if (kind == Kind::periodic_x) set_moebius(p, Side::z_hi, 6);
   if (kind == Kind::periodic_z) set_moebius(p, Side::x_lo, 3);
@@ -160,7 +176,7 @@ void check_same(const Everything& a, const Everything& b) {
 
 TEST_CASE("Fields and recordings do not depend on threads or schedule", "[schedule][exact]") {
   const auto kind = GENERATE(Kind::all_absorbing, Kind::mixed_walls, Kind::moebius, Kind::moebius_mixed,
-                             Kind::periodic_x, Kind::periodic_y, Kind::periodic_z);
+                             Kind::one_way, Kind::periodic_x, Kind::periodic_y, Kind::periodic_z);
   const auto precision = GENERATE(Precision::single_precision, Precision::double_precision);
   const Problem p = busy_problem(kind, precision);
   const Everything reference = run_all(p, 1, Schedule::plain);
