@@ -3,11 +3,12 @@
 # compares each with a reference that has (next to) no shell error. Writes, per scene, the comparison as text and CSV and
 # pictures of the error against time, and one summary. Needs the built program; pictures need gnuplot-nox.
 #   bash cases/shell_benchmarks.sh [--out FOLDER] [--scenes "square box ..."] [--kinds "moebius ..."] [--cells "5 8 ..."]
-#                                  [--large] [--program PATH]
-#   --scenes   square, plate, box, long_box, ground, slab, sphere, long_run; default: square box ground
+#                                  [--large] [--single] [--program PATH]
+#   --scenes   square, plate, box, long_box, ground, slab, sphere, charge, long_run; default: square box ground
 #   --kinds    moebius, cfs_searched, cfs_m3, cfs_m4, cfs_plate, matched_slab; default: all
 #   --cells    of the shell; default: 5 8 10 16
 #   --large    compare box and sphere with lattices so large that nothing returns: 3 GB, some ten minutes each on two cores
+#   --single   the shells in single precision; the references stay double
 # References: square (and box and sphere with --large) against a lattice so large that nothing returns before the end; the
 # others against the scene's witness, whose predicted floor stands in SCENE_witness.txt. The summary says which.
 set -euo pipefail
@@ -18,6 +19,7 @@ scenes="square box ground"
 kinds="moebius cfs_searched cfs_m3 cfs_m4 cfs_plate matched_slab"
 cells="5 8 10 16"
 large=no
+single=no
 while [ $# -gt 0 ]; do
   case $1 in
     --out) out=$2; shift 2 ;;
@@ -26,6 +28,7 @@ while [ $# -gt 0 ]; do
     --cells) cells=$2; shift 2 ;;
     --program) program=$2; shift 2 ;;
     --large) large=yes; shift ;;
+    --single) single=yes; shift ;;
     *) echo "$1 is no option of this script; its first lines name all" >&2; exit 2 ;;
   esac
 done
@@ -113,6 +116,7 @@ for scene in $scenes; do
     for n in $cells; do
       name=${scene}_${kind}_$n
       variant "$scene" "$(shell_of "$kind" "$n")" "$name.yaml"
+      [ "$single" = no ] || sed -i 's/^precision: double/precision: single/' "$name.yaml"
       names+=("$name")
     done
   done
