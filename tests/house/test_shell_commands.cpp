@@ -1,9 +1,12 @@
 // wanewall shell predict and wanewall shell design, as a user meets them.
 #include <catch2/catch.hpp>
+#include <cmath>
 #include <filesystem>
 #include <fstream>
 #include <iterator>
+#include <sstream>
 #include <string>
+#include <vector>
 
 #include "io/scene.hpp"
 #include "tests/house/child_process.hpp"
@@ -117,4 +120,27 @@ TEST_CASE("shell predict draws a picture, or says what it needs for it") {
     CHECK(outcome.exit_code == 4);
     CHECK(has(outcome.err, "gnuplot-nox"));
   }
+}
+
+TEST_CASE("shell measure reads from the march what the lattice theory says") {
+  const ScratchFolder folder;
+  folder.write("two.yaml", scene_with("shell: {every_face: {kind: cfs_pml, cells: 5, profile: polynomial}, "
+                                      "faces: {z+: {kind: moebius, cells: 4}}}\n"));
+  const Outcome outcome = run_program({"shell", "measure", "two.yaml", "--angles", "45"}, folder.path());
+  CAPTURE(outcome.err, outcome.out);
+  REQUIRE(outcome.exit_code == 0);
+  int rows = 0;
+  std::istringstream lines(outcome.out);
+  for (std::string line; std::getline(lines, line);) {
+    if (!has(line, "| TE") && !has(line, "| TM")) continue;
+    ++rows;
+    std::vector<std::string> cells;
+    std::istringstream columns(line);
+    for (std::string cell; std::getline(columns, cell, '|');) cells.push_back(cell);
+    REQUIRE(cells.size() >= 10);
+    CAPTURE(line);
+    CHECK(std::stod(cells[8]) < -15.0);
+    CHECK(std::abs(std::stod(cells[9])) < 0.05);
+  }
+  CHECK(rows == 4);  // five faces are alike, and two polarisations
 }
