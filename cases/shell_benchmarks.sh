@@ -127,7 +127,7 @@ for scene in $scenes; do
     # The energy over its largest value, at the tenths of the run: it may not rise at the end.
     for name in "${names[@]}"; do
       echo "$name: $(sed -n 's/.*step \([0-9]*\) of.*energy \(.*\) dB.*/\1 \2/p' "$name.log" |
-        awk '{ printf "%s%s: %s dB", NR > 1 ? ", " : "", $1, $2 }')"
+        awk '{ printf "%s%s: %s dB", (NR > 1 ? ", " : ""), $1, $2 }')"
     done | tee long_run.txt
     continue
   fi
