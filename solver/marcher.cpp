@@ -272,7 +272,7 @@ void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* differ
   task.memory_step = step * (along_x ? column_memory_.x_stride() : column_memory_.y_stride());
   task.difference_step = step * difference_step;
   // Across x the next row's columns follow soon; across y the rest of a plane lies between.
-  constexpr std::ptrdiff_t soon = 256 / sizeof(Real);
+  constexpr std::ptrdiff_t soon = cache_line_bytes / sizeof(Real);
   task.h_ahead = along_x ? layout_.row : soon;
   task.memory_ahead =
       along_x ? column_memory_.x(slot, across + 1, 0) - column_memory_.x(slot, across, 0) : soon;
