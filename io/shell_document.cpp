@@ -26,16 +26,6 @@ bool same_cell(const Scene& scene, Side a, Side b) {
   return std::abs(cell_m(scene, a) - cell_m(scene, b)) < 1e-9 * cell_m(scene, a);
 }
 
-bool same_table(const Face& a, const Face& b) {
-  return a.kind == b.kind && a.one_way_order == b.one_way_order && a.moebius.kappa == b.moebius.kappa &&
-         a.moebius.sigma_s_per_m == b.moebius.sigma_s_per_m &&
-         a.moebius.alpha_s_per_m == b.moebius.alpha_s_per_m &&
-         a.layer.sigma_e_s_per_m == b.layer.sigma_e_s_per_m &&
-         a.layer.sigma_h_s_per_m == b.layer.sigma_h_s_per_m && a.layer.kappa_e == b.layer.kappa_e &&
-         a.layer.kappa_h == b.layer.kappa_h && a.layer.alpha_e_s_per_m == b.layer.alpha_e_s_per_m &&
-         a.layer.alpha_h_s_per_m == b.layer.alpha_h_s_per_m;
-}
-
 std::string names(const std::vector<Side>& sides) {
   std::string text;
   for (Side side : sides) text += (text.empty() ? "" : " ") + std::string(name_of(side));
@@ -98,7 +88,7 @@ std::vector<std::vector<Side>> alike_designs(const Scene& scene) {
       const Side first = group.front();
       return as_designed(*scene.designs[static_cast<std::size_t>(index_of(first))].inputs) ==
                  as_designed(*design.inputs) &&
-             same_table(scene.problem.face(first), scene.problem.face(side)) && same_cell(scene, first, side);
+             scene.problem.face(first) == scene.problem.face(side) && same_cell(scene, first, side);
     };
     const auto found = std::find_if(groups.begin(), groups.end(), same);
     if (found == groups.end())
@@ -147,7 +137,7 @@ std::vector<FacePrediction> predict_shell(const Scene& scene, const PredictionGr
     if (!absorbs(face.kind)) continue;
     for (int medium : scene.surroundings.faces[static_cast<std::size_t>(index_of(side))].media) {
       const auto same = [&](const FacePrediction& p) {
-        return p.medium == medium && same_table(problem.face(p.sides.front()), face) &&
+        return p.medium == medium && problem.face(p.sides.front()) == face &&
                same_cell(scene, p.sides.front(), side);
       };
       const auto found = std::find_if(all.begin(), all.end(), same);

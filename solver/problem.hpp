@@ -41,6 +41,7 @@ struct Face {
   int one_way_order = 1;  ///< 1 or 2
 
   int cells() const { return kind == FaceKind::moebius ? moebius.cells() : layer.cells(); }
+  bool operator==(const Face&) const = default;
 };
 
 /// Plane wave through a total-field/scattered-field surface.

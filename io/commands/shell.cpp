@@ -92,15 +92,6 @@ struct MeasureOptions {
   std::vector<double> cells_per_wavelength{20.0};
 };
 
-bool same_layer(const Face& a, const Face& b) {
-  return a.kind == b.kind && a.one_way_order == b.one_way_order && a.moebius.kappa == b.moebius.kappa &&
-         a.moebius.sigma_s_per_m == b.moebius.sigma_s_per_m &&
-         a.moebius.alpha_s_per_m == b.moebius.alpha_s_per_m &&
-         a.layer.sigma_e_s_per_m == b.layer.sigma_e_s_per_m &&
-         a.layer.sigma_h_s_per_m == b.layer.sigma_h_s_per_m && a.layer.kappa_e == b.layer.kappa_e &&
-         a.layer.alpha_e_s_per_m == b.layer.alpha_e_s_per_m;
-}
-
 ExitCode measure_command(const MeasureOptions& options) {
   const Scene scene = read_scene(options.scene_path);
   const Problem& problem = scene.problem;
@@ -122,8 +113,7 @@ ExitCode measure_command(const MeasureOptions& options) {
     const double cell_m = problem.lattice.along(axis_of(side)).smallest_cell_m();
     if (!absorbs(face.kind)) continue;
     const auto alike = [&](Side other) {
-      return same_layer(problem.face(other), face) &&
-             problem.lattice.along(axis_of(other)).smallest_cell_m() == cell_m;
+      return problem.face(other) == face && problem.lattice.along(axis_of(other)).smallest_cell_m() == cell_m;
     };
     if (std::any_of(done.begin(), done.end(), alike)) continue;
     done.push_back(side);

@@ -16,6 +16,7 @@ struct LayerTable {
   std::vector<double> kappa_e, kappa_h;
   std::vector<double> alpha_e_s_per_m, alpha_h_s_per_m;
   int cells() const { return static_cast<int>(sigma_e_s_per_m.size()); }
+  bool operator==(const LayerTable&) const = default;
 };
 
 /// Cell d of a Moebius layer lies between its nodes d and d + 1, counted outwards; node 0 is the layer's
@@ -27,6 +28,7 @@ struct LayerTable {
 struct MoebiusTable {
   std::vector<double> kappa, sigma_s_per_m, alpha_s_per_m;
   int cells() const { return static_cast<int>(kappa.size()); }
+  bool operator==(const MoebiusTable&) const = default;
 };
 
 /// Polynomial grading: sigma = sigma_max u^order, kappa = 1 + (kappa_max - 1) u^order, alpha = alpha_max

@@ -144,3 +144,18 @@ TEST_CASE("shell measure reads from the march what the lattice theory says") {
   }
   CHECK(rows == 4);  // five faces are alike, and two polarisations
 }
+
+TEST_CASE("a goal is designed for before a run and shown as held after it, with its floor") {
+  const ScratchFolder folder;
+  const std::string scene = std::string(WANEWALL_SOURCE_DIR) + "/cases/audited_box.yaml";
+  REQUIRE(run_program({"run", scene, "--record", "box.h5"}, folder.path()).exit_code == 0);
+  const Outcome outcome = run_program({"tables", "box.h5"}, folder.path());
+  CAPTURE(outcome.err);
+  REQUIRE(outcome.exit_code == 0);
+  int held = 0;
+  const std::string words = "holds the goal of -80 dB; as designed to -1";
+  for (std::size_t at = outcome.out.find(words); at != std::string::npos;
+       at = outcome.out.find(words, at + 1))
+    ++held;
+  CHECK(held == 6);
+}
