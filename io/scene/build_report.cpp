@@ -12,6 +12,7 @@
 #include "io/scene/text_table.hpp"
 #include "io/terminal.hpp"
 #include "solver/interpolation.hpp"
+#include "solver/shell/design.hpp"
 
 namespace wanewall::scene {
 namespace {
@@ -183,7 +184,11 @@ std::string reason_text(const Scene& scene, Side side) {
   const FaceDesign& design = scene.designs[s];
   if (design.origin == FaceDesign::Origin::listed) return "listed";
   if (design.origin == FaceDesign::Origin::polynomial) return "polynomial";
-  if (design.goal_db) return fmt::format("fewest for {:.0f} dB", *design.goal_db);
+  if (design.goal_db) {
+    const bool meets =
+        design.figures && design.figures->mean_db <= *design.goal_db - design_margin_db(*design.goal_db);
+    return fmt::format("{} for {:.0f} dB", meets ? "fewest" : "best", *design.goal_db);
+  }
   for (const UsedValue& value : scene.used)
     if (value.path == fmt::format("shell.faces.{}.cells", name_of(side)) && value.by_default)
       return scene.problem.precision == Precision::single_precision ? "default in single"
