@@ -60,6 +60,11 @@ std::vector<int> make_column_slots(const Problem& problem, Axis axis) {
   return slots;
 }
 
+Schedule schedule_for(const Problem& problem) {
+  const bool untiled = problem.schedule == Schedule::tiles && !TileSweep::is_possible(problem.lattice);
+  return untiled ? Schedule::fused : problem.schedule;
+}
+
 const Problem& checked(const Problem& problem) {
   check_moebius_faces(problem);
   return problem;
@@ -86,7 +91,10 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
       dipoles_(problem, e_media_, h_media_),
       rows_{group_rows(problem, Axis::x), group_rows(problem, Axis::y),
             rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
-      slabs_(deal_groups(rows_.i_begin, threads)) {
+      slabs_(deal_groups(rows_.i_begin, threads)),
+      schedule_(schedule_for(problem)),
+      shape_(problem.tiles.value_or(TileShape{})),
+      tiles_(rows_, {problem.lattice.periodic[0], problem.lattice.periodic[1]}, threads) {
   for (Side side : all_sides)
     columns_[static_cast<std::size_t>(index_of(side))] = MoebiusColumns<Real>(problem_, side, layout_);
   for (const std::size_t high : {0, 1}) {
@@ -95,6 +103,8 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
     z_windows_[1][high] = z_window(problem_, side, false, layout_, sizeof(Real));
   }
   if (problem_.plane_wave) surface_ = std::make_unique<TotalFieldSurface<Real>>(problem_, e_media_, h_media_);
+  make_places();
+  make_extras();
 #pragma omp parallel num_threads(threads_)
   {
     // The thread that works on a plane is the first to touch it. Rows past the last moving one belong to the
@@ -138,47 +148,122 @@ const Real* Marcher<Real>::mirrored(Component c, int i, int j, Real* scratch) co
 }
 
 template <class Real>
-RowTask<Real> Marcher<Real>::task(int i, int j, bool electric) {
-  RowTask<Real> t;
-  auto& stretch = electric ? e_stretch_ : h_stretch_;
-  // Neighbour rows. Beyond an electric wall there is none; the row itself stands in, since nothing that reads
-  // it moves.
-  const auto neighbour = [&](Axis axis, int index, int n) {
-    const bool joined = problem_.lattice.periodic[static_cast<std::size_t>(index_of(axis))];
-    if (electric) return index > 0 ? index - 1 : joined ? n - 1 : 0;
-    return index < n - 1 ? index + 1 : index == n - 1 && joined ? 0 : n;
-  };
+void Marcher<Real>::attach(Captures<Real>* captures) {
+  captures_ = captures;
+  make_extras();
+}
+
+template <class Real>
+void Marcher<Real>::make_places() {
+  for (const bool high : {false, true}) {
+    const Side side = side_of(Axis::z, high);
+    z_wall_is_electric_[high ? 1 : 0] = wall_is_electric(problem_, side);
+    z_walls_reach_beyond_ =
+        z_walls_reach_beyond_ || kind(side) == FaceKind::magnetic_wall || kind(side) == FaceKind::periodic;
+  }
+  for (const bool electric : {true, false}) {
+    const auto& stretch = electric ? e_stretch_ : h_stretch_;
+    for (const Axis axis : {Axis::x, Axis::y}) {
+      const auto a = static_cast<std::size_t>(index_of(axis));
+      const int n = problem_.lattice.cells(axis);
+      const bool joined = problem_.lattice.periodic[a];
+      // Beyond an electric wall there is no neighbour; the row itself stands in, since nothing that reads it
+      // moves.
+      const auto neighbour = [&](int index) {
+        if (electric) return index > 0 ? index - 1 : joined ? n - 1 : 0;
+        return index < n - 1 ? index + 1 : index == n - 1 && joined ? 0 : n;
+      };
+      std::vector<Place>& places = places_[electric ? 0 : 1][a];
+      for (int index = 0; index <= n; ++index) {
+        const auto at = static_cast<std::size_t>(index);
+        Place place;
+        place.beside = (neighbour(index) - index) * (axis == Axis::x ? layout_.plane : layout_.row);
+        place.inv = stretch[a].inv[at];
+        place.slot = stretch[a].slot[at];
+        if (place.slot >= 0) {
+          place.b = stretch[a].b[at];
+          place.c = stretch[a].c[at];
+          place.late = stretch[a].late[at] != 0;
+        }
+        places.push_back(place);
+      }
+    }
+  }
+  const auto n_rows_y = static_cast<std::size_t>(rows_.j_begin.back());
+  j_run_end_.assign(n_rows_y, 0);
+  j_group_end_.assign(n_rows_y, 0);
+  for (int b = rows_.n_j(); b-- > 0;) {
+    const int begin = rows_.j_begin[static_cast<std::size_t>(b)],
+              end = rows_.j_begin[static_cast<std::size_t>(b) + 1];
+    const auto at = static_cast<std::size_t>(begin);
+    j_group_end_[at] = end;
+    const bool single = end - begin == 1 && column_slot_[1][at] < 0;
+    const bool goes_on = single && end < rows_.j_begin.back() && j_run_end_[at + 1] > end;
+    j_run_end_[at] = !single ? begin : goes_on ? j_run_end_[at + 1] : end;
+  }
+}
+
+template <class Real>
+void Marcher<Real>::make_extras() {
+  for (const bool electric : {true, false}) {
+    std::vector<unsigned char>& extras = extras_[electric ? 0 : 1];
+    extras.assign(static_cast<std::size_t>(layout_.nx + 1) * static_cast<std::size_t>(layout_.ny + 1), 0);
+    std::size_t row = 0;
+    for (int i = 0; i <= layout_.nx; ++i) {
+      for (int j = 0; j <= layout_.ny; ++j, ++row) {
+        unsigned extra = 0;
+        if (surface_ && (electric ? surface_->touches_e(i, j) : surface_->touches_h(i, j)))
+          extra |= on_surface;
+        if (dipoles_.touches(i, j)) extra |= has_dipole;
+        if (captures_ && captures_->touches(electric, i, j)) extra |= is_captured;
+        const auto magnetic_at = [&](Axis a, int index, int n) {
+          return (index == 0 && kind(side_of(a, false)) == FaceKind::magnetic_wall) ||
+                 (index == n && kind(side_of(a, true)) == FaceKind::magnetic_wall);
+        };
+        if (electric && (magnetic_at(Axis::x, i, layout_.nx) || magnetic_at(Axis::y, j, layout_.ny)))
+          extra |= has_mirror;
+        extras[row] = static_cast<unsigned char>(extra);
+      }
+    }
+  }
+}
+
+/// All of the task that depends on the row alone. Whatever else a task may hold is left as it is.
+template <class Real>
+void Marcher<Real>::fill_task(int i, int j, bool electric, RowTask<Real>& t) {
+  const Place& x = places_[electric ? 0 : 1][0][static_cast<std::size_t>(i)];
+  const Place& y = places_[electric ? 0 : 1][1][static_cast<std::size_t>(j)];
   const std::ptrdiff_t here = layout_.at(i, j);
-  const std::ptrdiff_t beside_x = layout_.at(neighbour(Axis::x, i, layout_.nx), j);
-  const std::ptrdiff_t beside_y = layout_.at(i, neighbour(Axis::y, j, layout_.ny));
   for (std::size_t c = 0; c < 3; ++c) {
     Real* const own = fields_.first(all_components[electric ? c : c + 3]);
-    const Real* const other = fields_.first(all_components[electric ? c + 3 : c]);
+    const Real* const other = fields_.first(all_components[electric ? c + 3 : c]) + here;
     t.own[c] = own + here;
-    t.other[c] = other + here;
-    t.beside_x[c] = other + beside_x;
-    t.beside_y[c] = other + beside_y;
+    t.other[c] = other;
+    t.beside_x[c] = other + x.beside;
+    t.beside_y[c] = other + y.beside;
   }
-  t.inv_x = stretch[0].inv[static_cast<std::size_t>(i)];
-  t.inv_y = stretch[1].inv[static_cast<std::size_t>(j)];
-  t.inv_z = stretch[2].inv.data();
+  t.inv_x = x.inv;
+  t.inv_y = y.inv;
+  t.inv_z = (electric ? e_stretch_ : h_stretch_)[2].inv.data();
   t.ahead = layout_.row;
   auto& memory = electric ? e_memory_ : h_memory_;
-  if (const int slot = stretch[0].slot[static_cast<std::size_t>(i)]; slot >= 0) {
-    t.x_b = stretch[0].b[static_cast<std::size_t>(i)];
-    t.x_c = stretch[0].c[static_cast<std::size_t>(i)];
-    t.x_late = stretch[0].late[static_cast<std::size_t>(i)] != 0;
-    t.x_psi_first = memory.x(slot, j, 0);
-    t.x_psi_second = memory.x(slot, j, 1);
+  if (x.slot >= 0) {
+    t.x_b = x.b;
+    t.x_c = x.c;
+    t.x_late = x.late;
+    t.x_psi_first = memory.x(x.slot, j, 0);
+    t.x_psi_second = memory.x(x.slot, j, 1);
   }
-  if (const int slot = stretch[1].slot[static_cast<std::size_t>(j)]; slot >= 0) {
-    t.y_b = stretch[1].b[static_cast<std::size_t>(j)];
-    t.y_c = stretch[1].c[static_cast<std::size_t>(j)];
-    t.y_late = stretch[1].late[static_cast<std::size_t>(j)] != 0;
-    t.y_psi_first = memory.y(slot, i, 0);
-    t.y_psi_second = memory.y(slot, i, 1);
+  if (y.slot >= 0) {
+    t.y_b = y.b;
+    t.y_c = y.c;
+    t.y_late = y.late;
+    t.y_psi_first = memory.y(y.slot, i, 0);
+    t.y_psi_second = memory.y(y.slot, i, 1);
   }
-  return t;
+  const RowMedia<Real>& media = (electric ? e_media_ : h_media_).row(i, j);
+  t.spans = media.spans.data();
+  t.n_spans = static_cast<int>(media.spans.size());
 }
 
 template <class Real>
@@ -246,8 +331,8 @@ void Marcher<Real>::add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& me
 template <class Real>
 void Marcher<Real>::hold_z_walls(const RowTask<Real>& t) {
   const int nz = layout_.nz;
-  if (wall_is_electric(problem_, Side::z_lo)) t.own[0][0] = t.own[1][0] = Real(0);
-  if (wall_is_electric(problem_, Side::z_hi)) t.own[0][nz] = t.own[1][nz] = Real(0);
+  if (z_wall_is_electric_[0]) t.own[0][0] = t.own[1][0] = Real(0);
+  if (z_wall_is_electric_[1]) t.own[0][nz] = t.own[1][nz] = Real(0);
   if (kind(Side::z_lo) == FaceKind::periodic) {
     t.own[0][nz] = t.own[0][0];
     t.own[1][nz] = t.own[1][0];
@@ -287,7 +372,27 @@ void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* differ
 }
 
 template <class Real>
-void Marcher<Real>::advance_e(const RowBlock& block) {
+void Marcher<Real>::advance_e(const RowBlock& block, long step) {
+  const int slot = static_cast<int>(step - block_.first);
+  const bool single = block.i1 - block.i0 == 1 && column_slot_[0][static_cast<std::size_t>(block.i0)] < 0;
+  for (int j = block.j0; j < block.j1;) {
+    const int run_end = std::min(j_run_end_[static_cast<std::size_t>(j)], block.j1);
+    if (run_end == j) {
+      const int group_end = j_group_end_[static_cast<std::size_t>(j)];
+      advance_e_group({block.i0, block.i1, j, group_end}, slot);
+      j = group_end;
+    } else if (single) {
+      for (; j < run_end; ++j) advance_e_row(block.i0, j, run_end, slot, {}, layout_.row);
+    } else {
+      advance_e_group({block.i0, block.i1, j, run_end}, slot);
+      j = run_end;
+    }
+  }
+}
+
+/// Rows of a group along x and one along y, or single ones along y.
+template <class Real>
+void Marcher<Real>::advance_e_group(const RowBlock& block, int slot) {
   // The row next to a one_way wall comes before the row on it.
   const auto in_order = [&](Axis axis, int index, int begin, int end) {
     return begin == 0 && end > 1 && kind(side_of(axis, false)) == FaceKind::one_way ? begin + end - 1 - index
@@ -302,12 +407,12 @@ void Marcher<Real>::advance_e(const RowBlock& block) {
   if (!x && !y) {
     for (int j = block.j0; j < block.j1; ++j)
       for (int i = block.i0; i < block.i1; ++i)
-        advance_e_row(in_order(Axis::x, i, block.i0, block.i1), in_order(Axis::y, j, block.j0, block.j1), {},
-                      layout_.row);
+        advance_e_row(in_order(Axis::x, i, block.i0, block.i1), in_order(Axis::y, j, block.j0, block.j1), 0,
+                      slot, {}, layout_.row);
     return;
   }
   const std::ptrdiff_t pair = 2 * layout_.row;
-  const int n_i = block.i1 - block.i0, n_j = block.j1 - block.j0;
+  const int n_i = block.i1 - block.i0, n_j = y ? block.j1 - block.j0 : 1;
   thread_local AlignedArray<Real> scratch;  // x pairs of one j, then y pairs of all i and j
   const auto needed = static_cast<std::size_t>(pair * (n_i + n_i * n_j));
   if (scratch.size() < needed) scratch = AlignedArray<Real>(needed);
@@ -320,11 +425,11 @@ void Marcher<Real>::advance_e(const RowBlock& block) {
     for (int i = block.i0; i < block.i1; ++i)
       solve_columns(Axis::y, on_high_side(Axis::y, block.j0), i, y_pairs + (i - block.i0) * n_j * pair, pair);
   for (int j_turn = block.j0; j_turn < block.j1; ++j_turn) {
-    const int j = in_order(Axis::y, j_turn, block.j0, block.j1);
+    const int j = y ? in_order(Axis::y, j_turn, block.j0, block.j1) : j_turn;
     if (x) solve_columns(Axis::x, on_high_side(Axis::x, block.i0), j, x_pairs, pair);
     for (int i_turn = block.i0; i_turn < block.i1; ++i_turn) {
       const int i = in_order(Axis::x, i_turn, block.i0, block.i1);
-      advance_e_row(i, j,
+      advance_e_row(i, j, 0, slot,
                     {x ? x_pairs + (i - block.i0) * pair : nullptr,
                      y ? y_pairs + ((i - block.i0) * n_j + (j - block.j0)) * pair : nullptr},
                     n_i > 1 ? layout_.plane : layout_.row);
@@ -332,19 +437,10 @@ void Marcher<Real>::advance_e(const RowBlock& block) {
   }
 }
 
+/// Tangential H on the far side of magnetic walls.
 template <class Real>
-void Marcher<Real>::advance_e_row(int i, int j, const Given& given, std::ptrdiff_t ahead) {
-  RowTask<Real> t = task(i, j, true);
-  t.ahead = ahead;
-  if (given.x) {
-    t.x_given_first = given.x;
-    t.x_given_second = given.x + layout_.row;
-  }
-  if (given.y) {
-    t.y_given_first = given.y;
-    t.y_given_second = given.y + layout_.row;
-  }
-  thread_local AlignedArray<Real> scratch;  // mirrored rows: Hy, Hz beyond an x wall, Hx, Hz beyond a y wall
+void Marcher<Real>::mirror_h(int i, int j, RowTask<Real>& t) {
+  thread_local AlignedArray<Real> scratch;  // Hy, Hz beyond an x wall, Hx, Hz beyond a y wall
   const auto mirror = [&](const Real** beside, std::size_t component, std::size_t slot) {
     const auto row = static_cast<std::size_t>(layout_.row);
     if (scratch.size() < 4 * row) scratch = AlignedArray<Real>(4 * row);
@@ -371,30 +467,52 @@ void Marcher<Real>::advance_e_row(int i, int j, const Given& given, std::ptrdiff
       mirrored(all_components[n + 3], i, j - 1, beyond);
     }
   }
-  const RowMedia<Real>& media = e_media_.row(i, j);
-  t.spans = media.spans.data();
-  t.n_spans = static_cast<int>(media.spans.size());
-  kernels_.advance_e(t);
-  add_z_layers(t, media, i, j, true);
-  add_z_walls(t, media);
-  if (surface_is_active_ && surface_->touches_e(i, j)) surface_->add_e(i, j, t.own);
-  if (!dipoles_.empty()) dipoles_.add_e(i, j, t.own);
-  hold_z_walls(t);
-  if (!one_way_.empty()) one_way_.finish_row(i, j, moving_to_, fields_);
-  if (captures_) captures_->take(true, i, j, fields_);
 }
 
 template <class Real>
-void Marcher<Real>::advance_h(int i, int j) {
-  RowTask<Real> t = task(i, j, false);
-  const RowMedia<Real>& media = h_media_.row(i, j);
-  t.spans = media.spans.data();
-  t.n_spans = static_cast<int>(media.spans.size());
-  kernels_.advance_h(t);
-  add_z_layers(t, media, i, j, false);
-  if (surface_is_active_ && surface_->touches_h(i, j)) surface_->add_h(i, j, t.own);
-  if (!dipoles_.empty()) dipoles_.add_h(i, j, t.own);
-  if (captures_) captures_->take(false, i, j, fields_);
+void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given& given,
+                                  std::ptrdiff_t ahead) {
+  RowTask<Real> t;
+  fill_task(i, j, true, t);
+  t.ahead = ahead;
+  if (given.x) {
+    t.x_given_first = given.x;
+    t.x_given_second = given.x + layout_.row;
+  }
+  if (given.y) {
+    t.y_given_first = given.y;
+    t.y_given_second = given.y + layout_.row;
+  }
+  const unsigned extra = extras_[0][static_cast<std::size_t>(i) * static_cast<std::size_t>(layout_.ny + 1) +
+                                    static_cast<std::size_t>(j)];
+  if (extra & has_mirror) mirror_h(i, j, t);
+  const RowMedia<Real>& media = e_media_.row(i, j);
+  kernels_.advance_e(t);
+  add_z_layers(t, media, i, j, true);
+  if (z_walls_reach_beyond_) add_z_walls(t, media);
+  if ((extra & on_surface) && surface_->is_active(slot)) surface_->add_e(i, j, j_end, slot, t.own);
+  if (extra & has_dipole) dipoles_.add_e(i, j, slot, t.own);
+  hold_z_walls(t);
+  if (!one_way_.empty()) one_way_.finish_row(i, j, block_.first + slot, fields_);
+  if (extra & is_captured) captures_->take(true, i, j, slot, fields_);
+}
+
+template <class Real>
+void Marcher<Real>::advance_h(const RowBlock& block, long step) {
+  const int slot = static_cast<int>(step - block_.first);
+  for (int i = block.i0; i < block.i1; ++i) {
+    const unsigned char* extras =
+        extras_[1].data() + static_cast<std::size_t>(i) * static_cast<std::size_t>(layout_.ny + 1);
+    for (int j = block.j0; j < block.j1; ++j) {
+      RowTask<Real> t;
+      fill_task(i, j, false, t);
+      kernels_.advance_h(t);
+      add_z_layers(t, h_media_.row(i, j), i, j, false);
+      if ((extras[j] & on_surface) && surface_->is_active(slot)) surface_->add_h(i, j, block.j1, slot, t.own);
+      if (extras[j] & has_dipole) dipoles_.add_h(i, j, slot, t.own);
+      if (extras[j] & is_captured) captures_->take(false, i, j, slot, fields_);
+    }
+  }
 }
 
 template <class Real>
@@ -406,35 +524,36 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
   {
     const FlushDenormals flush;
     const int thread = omp_get_thread_num();
-    const long first = step_ + 1;
-#pragma omp barrier
-    for (long s = first; s <= last; ++s) {
+    while (!failed && step_ < last) {
 #pragma omp single
       {
-        moving_to_ = s;
-        surface_is_active_ = surface_ && surface_->wave().is_active(s);
-        if (surface_) surface_->begin_step();
-        dipoles_.prepare(s);
-        for (Recorder* recorder : recorders) recorder->before_step(s);
+        // Blocks of equal length rather than long ones and a short rest.
+        const long left = last - step_, blocks = (left + shape_.steps - 1) / shape_.steps;
+        block_ = {step_ + 1, static_cast<int>((left + blocks - 1) / blocks)};
+        dipoles_.prepare(block_);
+        if (captures_) captures_->begin_block(block_.n);
+        for (Recorder* recorder : recorders) recorder->before_block(block_);
+        if (schedule_ == Schedule::tiles) tiles_.prepare(shape_, block_.first, block_.n);
       }
-      if (surface_is_active_) {
-#pragma omp for schedule(dynamic, 1)
-        for (int part = 0; part < surface_->wave().n_parts(); ++part) surface_->wave().prepare(s, part);
-      }
-      sweep(problem_.schedule, rows_, slabs_, thread, *this);
-      for (Recorder* recorder : recorders) recorder->after_step_shared(s, thread, threads_);
+      if (surface_) surface_->prepare(block_);
+#pragma omp barrier
+      if (schedule_ == Schedule::tiles)
+        tiles_.sweep(*this);
+      else
+        for (long s = block_.first; s < block_.end(); ++s) sweep(schedule_, rows_, slabs_, thread, s, *this);
+#pragma omp barrier
+      for (Recorder* recorder : recorders) recorder->after_block_shared(thread, threads_);
 #pragma omp barrier
 #pragma omp single
       {
-        step_ = s;
+        step_ = block_.end() - 1;
         try {
-          for (Recorder* recorder : recorders) recorder->after_step(s);
+          for (Recorder* recorder : recorders) recorder->after_block();
         } catch (...) {
           failure = std::current_exception();
           failed = true;
         }
       }
-      if (failed) break;
     }
   }
   if (failure) std::rethrow_exception(failure);

@@ -26,10 +26,12 @@ class Marcher : public RowWork {
   Marcher(const Problem& problem, int threads, VectorCode code = best_vector_code());
 
   /// Captures take part in every step from now on; null: none.
-  void attach(const Captures<Real>* captures) { captures_ = captures; }
+  void attach(Captures<Real>* captures);
 
   /// Advances from step() to step() + n, all recorders served. Starts the threads once.
   void advance(long n, const std::vector<Recorder*>& recorders);
+  /// Steps that are made together when as many are asked for.
+  int block_steps() const { return shape_.steps; }
 
   long step() const { return step_; }
   Fields<Real>& fields() { return fields_; }
@@ -49,8 +51,8 @@ class Marcher : public RowWork {
   /// First component and cell that is not finite, as text; empty when all are.
   std::string find_not_finite() const;
 
-  void advance_e(const RowBlock& block) override;
-  void advance_h(int i, int j) override;
+  void advance_e(const RowBlock& block, long step) override;
+  void advance_h(const RowBlock& block, long step) override;
 
   /// Bytes held, by kind.
   std::size_t field_bytes() const { return Fields<Real>::bytes(layout_); }
@@ -64,12 +66,26 @@ class Marcher : public RowWork {
     const Real* x = nullptr;
     const Real* y = nullptr;
   };
-  void advance_e_row(int i, int j, const Given& given, std::ptrdiff_t ahead);
+  /// What a row's index along x or y means for its update.
+  struct Place {
+    std::ptrdiff_t beside = 0;  ///< from the row to the neighbour that its curl reads
+    Real inv = 0, b = 0, c = 0;
+    bool late = false;
+    int slot = -1;
+  };
+  /// What a row has to do beside its curl and its layers.
+  enum Extra : unsigned char { on_surface = 1, has_dipole = 2, is_captured = 4, has_mirror = 8 };
+
+  void make_places();
+  void make_extras();
+  void advance_e_group(const RowBlock& block, int slot);
+  void advance_e_row(int i, int j, int j_end, int slot, const Given& given, std::ptrdiff_t ahead);
+  void mirror_h(int i, int j, RowTask<Real>& t);
   void solve_columns(Axis axis, bool high, int across, Real* difference, std::ptrdiff_t difference_step);
   const MoebiusColumns<Real>& columns(Axis axis, bool high) const {
     return columns_[static_cast<std::size_t>(index_of(side_of(axis, high)))];
   }
-  RowTask<Real> task(int i, int j, bool electric);
+  void fill_task(int i, int j, bool electric, RowTask<Real>& t);
   void add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j, bool electric);
   void add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media);
   void hold_z_walls(const RowTask<Real>& t);
@@ -90,12 +106,20 @@ class Marcher : public RowWork {
   OneWayWalls<Real> one_way_;
   std::unique_ptr<TotalFieldSurface<Real>> surface_;
   DipoleRows<Real> dipoles_;
-  bool surface_is_active_ = false;
-  const Captures<Real>* captures_ = nullptr;
+  Captures<Real>* captures_ = nullptr;
+  std::array<std::array<std::vector<Place>, 2>, 2> places_;  // [E, H][x, y]
+  std::array<std::vector<unsigned char>, 2> extras_;         // [E, H][row]: of Extra
+  std::array<bool, 2> z_wall_is_electric_{};                 // [low, high]
+  bool z_walls_reach_beyond_ = false;                        ///< magnetic or periodic
+  std::vector<int> j_run_end_;  // of single rows outside Moebius layers from j on; j itself when it is none
+  std::vector<int> j_group_end_;
   RowGroups rows_;
   std::vector<int> slabs_;
+  Schedule schedule_;
+  TileShape shape_;
+  TileSweep tiles_;
+  StepBlock block_;  ///< being made
   long step_ = 0;
-  long moving_to_ = 0;  ///< the step being made
 };
 
 }  // namespace wanewall

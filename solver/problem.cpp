@@ -13,7 +13,14 @@ std::string_view name_of(FaceKind kind) {
 }
 
 std::string_view name_of(Schedule schedule) {
-  return schedule == Schedule::plain ? "plain" : "fused";
+  constexpr std::array<std::string_view, 3> names{"plain", "fused", "tiles"};
+  return names[static_cast<std::size_t>(schedule)];
+}
+
+Schedule schedule_named(std::string_view name) {
+  for (const Schedule schedule : {Schedule::plain, Schedule::fused, Schedule::tiles})
+    if (name_of(schedule) == name) return schedule;
+  throw std::logic_error("no schedule is called " + std::string(name));
 }
 
 std::string_view name_of(StopReason reason) {

@@ -111,8 +111,18 @@ struct StopRule {
   std::optional<double> energy_below_db;
 };
 
-enum class Schedule { plain, fused };
+enum class Schedule { plain, fused, tiles };
 std::string_view name_of(Schedule schedule);
+/// The schedule of a name that name_of gives.
+Schedule schedule_named(std::string_view name);
+
+/// Sizes of a tile of the tiled schedule (solver/schedule.hpp).
+struct TileShape {
+  int x_rows = 16, y_rows = 16;  ///< cross-section
+  int steps = 8;                 ///< that a tile is advanced at a time
+  bool operator==(const TileShape&) const = default;
+};
+inline constexpr int most_tile_steps = 32;
 
 struct Problem {
   Lattice lattice;
@@ -125,8 +135,9 @@ struct Problem {
   std::vector<Dipole> dipoles;
   Recording recording;
   StopRule stop;
-  Schedule schedule = Schedule::fused;
-  int threads = 0;  ///< 0: one per processor
+  Schedule schedule = Schedule::tiles;  ///< tiles become fused where x and y are both periodic
+  std::optional<TileShape> tiles;       ///< none: found by trying while the run goes on
+  int threads = 0;                      ///< 0: one per processor
 
   const Face& face(Side s) const { return faces[static_cast<std::size_t>(index_of(s))]; }
   long last_step() const;  ///< the step at which `stop.at_s` is reached

@@ -15,6 +15,12 @@ AddIncident<float> add_incident_avx2_float();
 AddIncident<double> add_incident_avx2_double();
 AddIncident<float> add_incident_avx512_float();
 AddIncident<double> add_incident_avx512_double();
+AddSamples<float> add_samples_base_float();
+AddSamples<double> add_samples_base_double();
+AddSamples<float> add_samples_avx2_float();
+AddSamples<double> add_samples_avx2_double();
+AddSamples<float> add_samples_avx512_float();
+AddSamples<double> add_samples_avx512_double();
 SampleTable sample_table_base();
 SampleTable sample_table_avx2();
 SampleTable sample_table_avx512();
@@ -56,6 +62,20 @@ template <>
 AddIncident<double> add_incident(VectorCode code) {
   static const AddIncident<double> table[3]{add_incident_base_double(), add_incident_avx2_double(),
                                             add_incident_avx512_double()};
+  return table[static_cast<int>(code)];
+}
+
+template <>
+AddSamples<float> add_samples(VectorCode code) {
+  static const AddSamples<float> table[3]{add_samples_base_float(), add_samples_avx2_float(),
+                                          add_samples_avx512_float()};
+  return table[static_cast<int>(code)];
+}
+
+template <>
+AddSamples<double> add_samples(VectorCode code) {
+  static const AddSamples<double> table[3]{add_samples_base_double(), add_samples_avx2_double(),
+                                           add_samples_avx512_double()};
   return table[static_cast<int>(code)];
 }
 

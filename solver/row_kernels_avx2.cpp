@@ -23,4 +23,11 @@ AddIncident<double> add_incident_avx2_double() {
   return vector_avx2::add_incident<double>;
 }
 
+AddSamples<float> add_samples_avx2_float() {
+  return vector_avx2::add_samples<float>;
+}
+AddSamples<double> add_samples_avx2_double() {
+  return vector_avx2::add_samples<double>;
+}
+
 }  // namespace wanewall

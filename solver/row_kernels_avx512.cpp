@@ -23,4 +23,11 @@ AddIncident<double> add_incident_avx512_double() {
   return vector_avx512::add_incident<double>;
 }
 
+AddSamples<float> add_samples_avx512_float() {
+  return vector_avx512::add_samples<float>;
+}
+AddSamples<double> add_samples_avx512_double() {
+  return vector_avx512::add_samples<double>;
+}
+
 }  // namespace wanewall

@@ -23,4 +23,11 @@ AddIncident<double> add_incident_base_double() {
   return vector_base::add_incident<double>;
 }
 
+AddSamples<float> add_samples_base_float() {
+  return vector_base::add_samples<float>;
+}
+AddSamples<double> add_samples_base_double() {
+  return vector_base::add_samples<double>;
+}
+
 }  // namespace wanewall

@@ -63,7 +63,7 @@ RunResult run_as(const Problem& problem, Sink& sink, Monitor& monitor) {
   while (marcher.step() < last) {
     const long to_energy = every - marcher.step() % every;
     const auto chunk_start = Clock::now();
-    const long n = std::min({chunk, to_energy, last - marcher.step()});
+    const long n = std::min({std::max<long>(chunk, marcher.block_steps()), to_energy, last - marcher.step()});
     marcher.advance(n, recorders);
     // Long enough that starting the threads costs nothing, short enough that a stop is obeyed at once.
     const double chunk_s = seconds_since(chunk_start);
@@ -126,7 +126,8 @@ Footprint footprint_as(const Problem& problem) {
   for (const bool electric : {true, false})
     footprint.media += static_cast<double>(MediaRows<Real>(problem, layout, electric, threads).bytes());
   footprint.audit = AuditRecorder<Real>::bytes(problem);
-  footprint.snapshots = SnapshotRecorder<Real>::bytes(problem.lattice, problem.recording.snapshots);
+  footprint.snapshots = SnapshotRecorder<Real>::bytes(problem.lattice, problem.recording.snapshots,
+                                                      problem.tiles.value_or(TileShape{}).steps);
   const double rows = (layout.nx + 1.0) * (layout.ny + 1.0);
   const double steps = static_cast<double>(problem.last_step());
   footprint.other = 8.0 * rows + 8.0 * 6.0 * steps * static_cast<double>(problem.recording.points.size());

@@ -1,53 +1,56 @@
 #include "solver/schedule.hpp"
 
+#include <sched.h>
+
 #include <algorithm>
 
 namespace wanewall {
 namespace {
 
-RowBlock block_of(const RowGroups& rows, int a, int b) {
-  const auto x = static_cast<std::size_t>(a), y = static_cast<std::size_t>(b);
-  return {rows.i_begin[x], rows.i_begin[x + 1], rows.j_begin[y], rows.j_begin[y + 1]};
+int at(const std::vector<int>& begin, int group) {
+  return begin[static_cast<std::size_t>(group)];
 }
 
 /// All E, then all H: the reference.
-void plain_sweep(const RowGroups& rows, int lo, int hi, RowWork& work) {
-  for (int a = lo; a < hi; ++a)
-    for (int b = 0; b < rows.n_j(); ++b) work.advance_e(block_of(rows, a, b));
+void plain_sweep(const RowGroups& rows, int lo, int hi, long step, RowWork& work) {
+  const int n_j = rows.j_begin.back();
+  for (int a = lo; a < hi; ++a) work.advance_e({at(rows.i_begin, a), at(rows.i_begin, a + 1), 0, n_j}, step);
 #pragma omp barrier
-  for (int i = rows.i_begin[static_cast<std::size_t>(lo)]; i < rows.i_begin[static_cast<std::size_t>(hi)];
-       ++i)
-    for (int j = 0; j < rows.j_begin.back(); ++j) work.advance_h(i, j);
+  work.advance_h({at(rows.i_begin, lo), at(rows.i_begin, hi), 0, n_j}, step);
 #pragma omp barrier
 }
 
 /// H follows E one row and one plane behind, while the rows it needs are still in cache. Groups are taken in
 /// bands along y narrow enough that two planes of a band stay in the cache next to the core. The last plane
 /// of a slab waits for the next slab's first.
-void fused_sweep(const RowGroups& rows, int lo, int hi, RowWork& work) {
-  const int first = rows.i_begin[static_cast<std::size_t>(lo)];
-  const int last = rows.i_begin[static_cast<std::size_t>(hi)] - 1;
+void fused_sweep(const RowGroups& rows, int lo, int hi, long step, RowWork& work) {
+  const int first = at(rows.i_begin, lo), last = at(rows.i_begin, hi) - 1;
   const int n_j = rows.j_begin.back();
-  for (int b_lo = 0; b_lo <= rows.n_j(); b_lo += rows.band) {
-    const int b_hi = std::min(b_lo + rows.band, rows.n_j() + 1);
+  for (int b_lo = 0; b_lo < rows.n_j(); b_lo += rows.band) {
+    const int b_hi = std::min(b_lo + rows.band, rows.n_j());
+    const int j_lo = at(rows.j_begin, b_lo), j_hi = at(rows.j_begin, b_hi);
     for (int a = lo; a < hi; ++a) {
-      for (int b = b_lo; b < b_hi; ++b) {
-        // Behind the last group, only the H that waited for it.
-        RowBlock block{rows.i_begin[static_cast<std::size_t>(a)],
-                       rows.i_begin[static_cast<std::size_t>(a) + 1], n_j, n_j + 1};
-        if (b < rows.n_j()) {
-          block = block_of(rows, a, b);
-          work.advance_e(block);
-        }
-        for (int j = std::max(block.j0 - 1, 0); j < block.j1 - 1; ++j)
-          for (int i = std::max(block.i0 - 1, first); i < block.i1 - 1; ++i) work.advance_h(i, j);
-      }
+      const int i_lo = at(rows.i_begin, a), i_hi = at(rows.i_begin, a + 1);
+      work.advance_e({i_lo, i_hi, j_lo, j_hi}, step);
+      work.advance_h(
+          {std::max(i_lo - 1, first), i_hi - 1, std::max(j_lo - 1, 0), b_hi == rows.n_j() ? n_j : j_hi - 1},
+          step);
     }
   }
 #pragma omp barrier
-  if (hi > lo)
-    for (int j = 0; j < n_j; ++j) work.advance_h(last, j);
+  if (hi > lo) work.advance_h({last, last + 1, 0, n_j}, step);
 #pragma omp barrier
+}
+
+/// Waits until another thread has come far enough. A waiting thread gives its processor away after a while,
+/// since the one it waits for may need it.
+void wait_for(const std::atomic<int>& done, int enough) {
+  for (int turn = 0; done.load(std::memory_order_acquire) < enough; ++turn) {
+    if (turn < 2000)
+      __builtin_ia32_pause();
+    else
+      sched_yield();
+  }
 }
 
 }  // namespace
@@ -68,10 +71,103 @@ std::vector<int> deal_groups(const std::vector<int>& i_begin, int threads) {
   return begin;
 }
 
-void sweep(Schedule schedule, const RowGroups& rows, const std::vector<int>& slabs, int thread,
+void sweep(Schedule schedule, const RowGroups& rows, const std::vector<int>& slabs, int thread, long step,
            RowWork& work) {
   const int lo = slabs[static_cast<std::size_t>(thread)], hi = slabs[static_cast<std::size_t>(thread) + 1];
-  schedule == Schedule::plain ? plain_sweep(rows, lo, hi, work) : fused_sweep(rows, lo, hi, work);
+  schedule == Schedule::plain ? plain_sweep(rows, lo, hi, step, work) : fused_sweep(rows, lo, hi, step, work);
+}
+
+bool TileSweep::is_possible(const Lattice& lattice) {
+  return !(lattice.periodic[0] && lattice.periodic[1]);
+}
+
+TileSweep::TileSweep(const RowGroups& rows, const std::array<bool, 2>& joined, int threads)
+    : rows_(rows), joined_(joined), threads_(threads) {}
+
+TileSweep::Range TileSweep::Cuts::e(int tile, int s) const {
+  if (joined) return {0, groups};
+  const int lo = at[static_cast<std::size_t>(tile)], hi = at[static_cast<std::size_t>(tile) + 1];
+  return {std::clamp(lo - s, 0, groups), std::clamp(hi - s, 0, groups)};
+}
+
+TileSweep::Range TileSweep::Cuts::h(int tile, int s) const {
+  return e(tile, joined ? s : s + 1);
+}
+
+/// Cuts as even as groups allow. Beyond the last group lie as many empty ones as there are steps.
+TileSweep::Cuts TileSweep::cut(const std::vector<int>& begin, bool joined, int rows_per_tile, int n_steps) {
+  Cuts cuts;
+  cuts.groups = static_cast<int>(begin.size()) - 1;
+  cuts.joined = joined;
+  if (joined) return cuts;
+  const int rows = begin.back() + n_steps;
+  const int tiles = std::max(1, (rows + rows_per_tile / 2) / rows_per_tile);
+  for (int t = 1; t < tiles; ++t) {
+    const int row = static_cast<int>(static_cast<long>(rows) * t / tiles);
+    const int group =
+        row >= begin.back()
+            ? cuts.groups + row - begin.back()
+            : static_cast<int>(std::lower_bound(begin.begin(), begin.end(), row) - begin.begin());
+    if (group > cuts.at.back()) cuts.at.push_back(group);
+  }
+  cuts.at.push_back(cuts.groups + n_steps);
+  return cuts;
+}
+
+TileShape TileSweep::real_shape(const TileShape& shape) const {
+  TileShape real = shape;
+  if (joined_[0] || shape.x_rows > rows_.i_begin.back()) real.x_rows = rows_.i_begin.back();
+  if (joined_[1] || shape.y_rows > rows_.j_begin.back()) real.y_rows = rows_.j_begin.back();
+  return real;
+}
+
+void TileSweep::prepare(const TileShape& shape, long first_step, int n_steps) {
+  x_ = cut(rows_.i_begin, joined_[0], shape.x_rows, n_steps);
+  y_ = cut(rows_.j_begin, joined_[1], shape.y_rows, n_steps);
+  first_step_ = first_step;
+  n_steps_ = n_steps;
+  n_strips_ = joined_[0] || joined_[1] ? std::min(n_steps, threads_) : x_.n();
+  n_along_ = joined_[1] ? x_.n() : y_.n();
+  if (progress_size_ < n_strips_) {
+    progress_ = std::make_unique<Progress[]>(static_cast<std::size_t>(n_strips_));
+    progress_size_ = n_strips_;
+  }
+  for (int p = 0; p < n_strips_; ++p) progress_[static_cast<std::size_t>(p)].done = 0;
+  next_strip_ = 0;
+}
+
+void TileSweep::sweep(RowWork& work) {
+  for (int p = next_strip_++; p < n_strips_; p = next_strip_++) {
+    for (int q = 0; q < n_along_; ++q) {
+      if (p > 0) wait_for(progress_[static_cast<std::size_t>(p) - 1].done, q + 1);
+      const int s_begin = n_steps_ * p / n_strips_, s_end = n_steps_ * (p + 1) / n_strips_;
+      if (joined_[0])
+        advance_tile(0, q, s_begin, s_end, work);
+      else if (joined_[1])
+        advance_tile(q, 0, s_begin, s_end, work);
+      else
+        advance_tile(p, q, 0, n_steps_, work);
+      progress_[static_cast<std::size_t>(p)].done.store(q + 1, std::memory_order_release);
+    }
+  }
+}
+
+/// H follows E one plane behind.
+void TileSweep::advance_tile(int a, int b, int s_begin, int s_end, RowWork& work) const {
+  for (int s = s_begin; s < s_end; ++s) {
+    const Range ex = x_.e(a, s), hx = x_.h(a, s), ey = y_.e(b, s), hy = y_.h(b, s);
+    const long step = first_step_ + s;
+    for (int x = std::min(ex.begin, hx.begin + 1); x < std::max(ex.end, hx.end + 1); ++x) {
+      if (!ey.empty() && ex.begin <= x && x < ex.end)
+        work.advance_e({at(rows_.i_begin, x), at(rows_.i_begin, x + 1), at(rows_.j_begin, ey.begin),
+                        at(rows_.j_begin, ey.end)},
+                       step);
+      if (!hy.empty() && hx.begin < x && x <= hx.end)
+        work.advance_h({at(rows_.i_begin, x - 1), at(rows_.i_begin, x), at(rows_.j_begin, hy.begin),
+                        at(rows_.j_begin, hy.end)},
+                       step);
+    }
+  }
 }
 
 }  // namespace wanewall

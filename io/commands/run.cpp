@@ -75,7 +75,7 @@ void apply_overrides(Scene& scene, const RunOptions& options) {
     use_instead(scene, "run.threads", std::to_string(options.threads));
   }
   if (!options.schedule.empty()) {
-    scene.problem.schedule = options.schedule == "plain" ? Schedule::plain : Schedule::fused;
+    scene.problem.schedule = schedule_named(options.schedule);
     use_instead(scene, "run.schedule", options.schedule);
   }
 }
@@ -289,7 +289,7 @@ void add_run_command(CLI::App& app, Action& action) {
       ->check(CLI::Range(1, 4096));
   command
       ->add_option("--schedule", options->schedule, "Order in which rows are visited; the result is the same")
-      ->check(CLI::IsMember({"plain", "fused"}));
+      ->check(CLI::IsMember({"plain", "fused", "tiles"}));
   command->add_flag("--xdmf", options->xdmf,
                     "Also write an XDMF file beside the record, for general viewers");
   command->add_flag("--force", options->force, "Replace an existing record, once the new one is whole");

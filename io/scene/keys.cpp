@@ -58,7 +58,7 @@ const Block& run() {
   static const Block b{"run",
                        "How the run is carried out. Nothing here changes a result.",
                        {with_default("threads", whole(0, 4096), "0", "Threads; 0 takes one per processor."),
-                        with_default("schedule", words({"plain", "fused"}), "fused",
+                        with_default("schedule", words({"plain", "fused", "tiles"}), "tiles",
                                      "Order in which rows are visited; plain is the slow reference.")},
                        {},
                        {},

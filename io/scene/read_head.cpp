@@ -24,7 +24,7 @@ void read_head(Cursor& root, Scene& scene) {
       root.word("precision") == "single" ? Precision::single_precision : Precision::double_precision;
   Cursor run = root.block("run");
   scene.problem.threads = static_cast<int>(run.whole("threads"));
-  scene.problem.schedule = run.word("schedule") == "plain" ? Schedule::plain : Schedule::fused;
+  scene.problem.schedule = schedule_named(run.word("schedule"));
 }
 
 void read_media(Cursor& root, Scene& scene) {

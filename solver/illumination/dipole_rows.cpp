@@ -10,7 +10,7 @@ namespace wanewall {
 template <class Real>
 DipoleRows<Real>::DipoleRows(const Problem& problem, const MediaRows<Real>& e_media,
                              const MediaRows<Real>& h_media)
-    : dipoles_(problem.dipoles), dt_s_(problem.lattice.dt_s), now_(problem.dipoles.size(), 0.0) {
+    : dipoles_(problem.dipoles), dt_s_(problem.lattice.dt_s) {
   const Lattice& lattice = problem.lattice;
   for (std::size_t n = 0; n < dipoles_.size(); ++n) {
     const Dipole& dipole = dipoles_[n];
@@ -45,19 +45,22 @@ DipoleRows<Real>::DipoleRows(const Problem& problem, const MediaRows<Real>& e_me
 }
 
 template <class Real>
-void DipoleRows<Real>::prepare(long step) {
-  for (std::size_t n = 0; n < dipoles_.size(); ++n)
-    now_[n] = value(dipoles_[n].pulse,
-                    dipoles_[n].is_magnetic ? time_of_e_s(step, dt_s_) : time_of_h_s(step - 1, dt_s_));
+void DipoleRows<Real>::prepare(const StepBlock& block) {
+  now_.clear();
+  for (long step = block.first; step < block.end(); ++step)
+    for (const Dipole& dipole : dipoles_)
+      now_.push_back(
+          value(dipole.pulse, dipole.is_magnetic ? time_of_e_s(step, dt_s_) : time_of_h_s(step - 1, dt_s_)));
 }
 
 template <class Real>
-void DipoleRows<Real>::add(int i, int j, Real* const own[3], bool electric) const {
+void DipoleRows<Real>::add(int i, int j, int slot, Real* const own[3], bool electric) const {
   const auto found = rows_.find({i, j});
   if (found == rows_.end()) return;
+  const double* now = now_.data() + static_cast<std::size_t>(slot) * dipoles_.size();
   for (const Term& term : found->second) {
     if (term.electric == electric)
-      own[term.component][term.k] += static_cast<Real>(term.factor * now_[term.dipole]);
+      own[term.component][term.k] += static_cast<Real>(term.factor * now[term.dipole]);
   }
 }
 

@@ -10,6 +10,7 @@
 
 #include "solver/media_rows.hpp"
 #include "solver/problem.hpp"
+#include "solver/recorders/recorder.hpp"
 
 namespace wanewall {
 
@@ -19,10 +20,11 @@ class DipoleRows {
   DipoleRows(const Problem& problem, const MediaRows<Real>& e_media, const MediaRows<Real>& h_media);
 
   bool empty() const { return rows_.empty(); }
-  /// Evaluates the waveforms for the step that brings E to `step` and H to step + 1/2. One thread.
-  void prepare(long step);
-  void add_e(int i, int j, Real* const own[3]) const { add(i, j, own, true); }
-  void add_h(int i, int j, Real* const own[3]) const { add(i, j, own, false); }
+  bool touches(int i, int j) const { return rows_.count({i, j}) > 0; }
+  /// Evaluates the waveforms of a block of steps: each brings E to `step` and H to step + 1/2. One thread.
+  void prepare(const StepBlock& block);
+  void add_e(int i, int j, int slot, Real* const own[3]) const { add(i, j, slot, own, true); }
+  void add_h(int i, int j, int slot, Real* const own[3]) const { add(i, j, slot, own, false); }
 
  private:
   struct Term {
@@ -31,11 +33,11 @@ class DipoleRows {
     double factor;  ///< field per unit of waveform
     std::size_t dipole;
   };
-  void add(int i, int j, Real* const own[3], bool electric) const;
+  void add(int i, int j, int slot, Real* const own[3], bool electric) const;
 
   std::vector<Dipole> dipoles_;
   double dt_s_;
-  std::vector<double> now_;
+  std::vector<double> now_;  // [slot][dipole]
   std::map<std::pair<int, int>, std::vector<Term>> rows_;
 };
 

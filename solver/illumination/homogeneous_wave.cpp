@@ -24,27 +24,26 @@ class HomogeneousWave : public IncidentWave {
   HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, const WaveMedium& medium);
 
   bool is_active(long step) const override { return time_of_e_s(step, dt_s_) < end_s_; }
+  void hold(int n_slots) override;
   int n_parts() const override { return 6; }
-  void prepare(long step, int part) override;
-  void row(Component c, int i, int j, int k, int count, double* out) const override {
-    line(c, {i, j, k}, Axis::z, count, out);
+  void prepare(long step, int slot, int part) override;
+  void row(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+    line(slot, c, {i, j, k}, Axis::z, count, out);
   }
-  void line_y(Component c, int i, int j, int k, int count, double* out) const override {
-    line(c, {i, j, k}, Axis::y, count, out);
+  void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+    line(slot, c, {i, j, k}, Axis::y, count, out);
   }
 
  private:
-  struct Part {
-    std::vector<Complex> amplitude;  // per wavenumber, for the component
-    std::vector<double> table;       // value at origin + m step, with room for the taps at both ends
-    double quiet_below = 0.0;        // positions in the table outside which nothing is left of the pulse
+  /// A component along the direction of travel at one step.
+  struct Table {
+    std::vector<double> value;  // at origin + m step, with room for the taps at both ends
+    double quiet_below = 0.0;   // positions in the table outside which nothing is left of the pulse
     double quiet_above = 0.0;
-    Eigen::FFT<double> fft;
-    std::vector<Complex> half_spectrum;
-    std::vector<double> samples;
   };
+  using Tables = std::array<Table, 6>;  // by component
 
-  void line(Component c, Index3 at, Axis along, int count, double* out) const;
+  void line(int slot, Component c, Index3 at, Axis along, int count, double* out) const;
   double along_m(Component c, Index3 at) const {
     double p = 0.0;
     const Vec3 r = lattice_.position_m(c, at);
@@ -62,7 +61,8 @@ class HomogeneousWave : public IncidentWave {
   double heard_above_ = 0.0;  // smaller fields are left out
   std::vector<double> omega_;
   std::vector<double> wavenumber_;
-  std::array<Part, 6> parts_;
+  std::array<std::vector<Complex>, 6> amplitude_;  // [component][wavenumber]
+  std::vector<Tables> slots_;
 };
 
 HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, const WaveMedium& medium)
@@ -137,8 +137,8 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
     wavenumber_.push_back(k);
     for (std::size_t a = 0; a < 3; ++a) {
       const std::size_t b = (a + 1) % 3, c = (a + 2) % 3;
-      parts_[a].amplitude.push_back(amplitude * e[a]);
-      parts_[3 + a].amplitude.push_back(amplitude * admittance * (unit[b] * e[c] - unit[c] * e[b]));
+      amplitude_[a].push_back(amplitude * e[a]);
+      amplitude_[3 + a].push_back(amplitude * admittance * (unit[b] * e[c] - unit[c] * e[b]));
     }
   }
   if (last_level > 1e-6)
@@ -152,46 +152,72 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
   while (kept > 1 && std::abs(spectrum(wave.pulse, omega_[kept - 1])) < spectrum_floor * peak) --kept;
   omega_.resize(kept);
   wavenumber_.resize(kept);
-  for (Part& part : parts_) {
-    part.amplitude.resize(kept);
+  for (std::vector<Complex>& amplitude : amplitude_) {
+    amplitude.resize(kept);
     // Phase of the table's first point.
-    for (std::size_t n = 0; n < kept; ++n)
-      part.amplitude[n] *= std::polar(1.0, -wavenumber_[n] * table_origin_m_);
-    part.fft.SetFlag(Eigen::FFT<double>::HalfSpectrum);
-    part.fft.SetFlag(Eigen::FFT<double>::Unscaled);
-    part.half_spectrum.assign(period_ / 2 + 1, Complex(0.0));
-    part.samples.resize(period_);
-    part.table.assign(table_size_, 0.0);
+    for (std::size_t n = 0; n < kept; ++n) amplitude[n] *= std::polar(1.0, -wavenumber_[n] * table_origin_m_);
   }
 }
 
-void HomogeneousWave::prepare(long step, int part_number) {
-  Part& part = parts_[static_cast<std::size_t>(part_number)];
-  const double t = part_number < 3 ? time_of_e_s(step, dt_s_) : time_of_h_s(step - 1, dt_s_);
+void HomogeneousWave::hold(int n_slots) {
+  for (std::size_t old = slots_.size(); old < static_cast<std::size_t>(n_slots); ++old) {
+    slots_.emplace_back();
+    for (Table& table : slots_.back()) table.value.assign(table_size_, 0.0);
+  }
+}
+
+void HomogeneousWave::prepare(long step, int slot, int part) {
+  thread_local Eigen::FFT<double> fft;
+  thread_local std::vector<Complex> half_spectrum;
+  thread_local std::vector<double> samples;
+  fft.SetFlag(Eigen::FFT<double>::HalfSpectrum);
+  fft.SetFlag(Eigen::FFT<double>::Unscaled);
+  half_spectrum.assign(period_ / 2 + 1, Complex(0.0));
+  samples.resize(period_);
+  const std::vector<Complex>& amplitude = amplitude_[static_cast<std::size_t>(part)];
+  const double t = part < 3 ? time_of_e_s(step, dt_s_) : time_of_h_s(step - 1, dt_s_);
   // Re sum A exp(j omega t) exp(-j k p): a real inverse transform of the conjugates.
   for (std::size_t n = 0; n < omega_.size(); ++n) {
-    const Complex term = part.amplitude[n] * std::polar(1.0, omega_[n] * t);
-    part.half_spectrum[n] = n == 0 ? Complex(term.real(), 0.0) : 0.5 * std::conj(term);
+    const Complex term = amplitude[n] * std::polar(1.0, omega_[n] * t);
+    half_spectrum[n] = n == 0 ? Complex(term.real(), 0.0) : 0.5 * std::conj(term);
   }
-  part.fft.inv(part.samples.data(), part.half_spectrum.data(), static_cast<Eigen::Index>(period_));
-  std::copy_n(part.samples.begin(), table_size_, part.table.begin());
+  fft.inv(samples.data(), half_spectrum.data(), static_cast<Eigen::Index>(period_));
+  Table& table = slots_[static_cast<std::size_t>(slot)][static_cast<std::size_t>(part)];
+  std::copy_n(samples.begin(), table_size_, table.value.begin());
   const auto heard = [&](double v) { return std::abs(v) > heard_above_; };
-  const auto first = std::find_if(part.table.begin(), part.table.end(), heard);
-  const auto last = std::find_if(part.table.rbegin(), part.table.rend(), heard);
-  part.quiet_below = static_cast<double>(first - part.table.begin()) - taps;
-  part.quiet_above = static_cast<double>(part.table.rend() - last) + taps;
+  const auto first = std::find_if(table.value.begin(), table.value.end(), heard);
+  const auto last = std::find_if(table.value.rbegin(), table.value.rend(), heard);
+  table.quiet_below = static_cast<double>(first - table.value.begin()) - taps;
+  table.quiet_above = static_cast<double>(table.value.rend() - last) + taps;
 }
 
-void HomogeneousWave::line(Component c, Index3 at, Axis along, int count, double* out) const {
-  const Part& part = parts_[static_cast<std::size_t>(index_of(c))];
-  const double first = (along_m(c, at) - table_origin_m_) / table_step_m_;
+// What a point gets must not depend on where its line begins or ends: positions are counted from the axis's
+// index 0, and each point is quiet or not by itself.
+void HomogeneousWave::line(int slot, Component c, Index3 at, Axis along, int count, double* out) const {
+  const Table& table = slots_[static_cast<std::size_t>(slot)][static_cast<std::size_t>(index_of(c))];
   const auto a = static_cast<std::size_t>(index_of(along));
+  const int begin = at[a];
+  at[a] = 0;
+  const double origin = (along_m(c, at) - table_origin_m_) / table_step_m_;
   const double step = direction_[a] * lattice_.along(along).cell_m(0) / table_step_m_;
-  const double last = first + (count - 1) * step;
-  if (std::max(first, last) < part.quiet_below || std::min(first, last) > part.quiet_above)
-    std::fill_n(out, count, 0.0);
-  else
-    sample_(part.table.data(), first, step, count, out);
+  const auto position = [&](int m) { return origin + (begin + m) * step; };
+  // The first and the last point that hear the wave lie where the line meets the ends of the pulse.
+  int first = 0, last = count;
+  if (step != 0.0) {
+    const double enter = ((step > 0.0 ? table.quiet_below : table.quiet_above) - position(0)) / step;
+    const double leave = ((step > 0.0 ? table.quiet_above : table.quiet_below) - position(0)) / step;
+    first = static_cast<int>(std::clamp(std::floor(enter) - 1.0, 0.0, static_cast<double>(count)));
+    last = static_cast<int>(std::clamp(std::ceil(leave) + 2.0, 0.0, static_cast<double>(count)));
+  }
+  const auto is_quiet = [&](int m) {
+    return position(m) < table.quiet_below || position(m) > table.quiet_above;
+  };
+  while (first < last && is_quiet(first)) ++first;
+  while (last > first && is_quiet(last - 1)) --last;
+  last = std::max(first, last);
+  std::fill(out, out + first, 0.0);
+  sample_(table.value.data(), origin, step, begin + first, last - first, out + first);
+  std::fill(out + last, out + count, 0.0);
 }
 
 }  // namespace

@@ -9,19 +9,23 @@
 
 namespace wanewall {
 
-/// Fields of a plane wave at two moments: H at (step - 1/2) dt and E at step dt, both in V/m (H as eta0 H).
+/// Fields of a plane wave at two moments of each step: H at (step - 1/2) dt and E at step dt, both in V/m (H
+/// as eta0 H). Tables of several steps are held at once, each in a slot.
 class IncidentWave {
  public:
   virtual ~IncidentWave() = default;
   /// True while the wave may be non-zero anywhere on the surface.
   virtual bool is_active(long step) const = 0;
-  /// Prepares the tables of one step. The work is cut into n_parts() pieces that may run side by side.
+  /// Makes room for the tables of so many steps. Between blocks of steps.
+  virtual void hold(int n_slots) = 0;
+  /// Prepares the tables of one step. The work is cut into n_parts() pieces that may run side by side, also
+  /// for different slots.
   virtual int n_parts() const = 0;
-  virtual void prepare(long step, int part) = 0;
+  virtual void prepare(long step, int slot, int part) = 0;
   /// `count` values of a component from (i, j, k) on along z. The wave must be active and prepared.
-  virtual void row(Component c, int i, int j, int k, int count, double* out) const = 0;
+  virtual void row(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
   /// `count` values of a component from (i, j, k) on along y.
-  virtual void line_y(Component c, int i, int j, int k, int count, double* out) const = 0;
+  virtual void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
 };
 
 /// Medium that carries the wave: lossless.

@@ -67,11 +67,14 @@ class LayeredWave : public IncidentWave {
               const LayeredColumn& column, double end_s);
 
   bool is_active(long step) const override { return time_of_e_s(step, dt_s_) <= end_s_; }
+  void hold(int n_slots) override {
+    if (slots_.size() < static_cast<std::size_t>(n_slots)) slots_.resize(static_cast<std::size_t>(n_slots));
+  }
   int n_parts() const override { return 2; }
-  void prepare(long step, int part) override;
-  void row(Component c, int i, int j, int k, int count, double* out) const override;
-  void line_y(Component c, int i, int j, int k, int count, double* out) const override {
-    row(c, i, j, k, 1, out);  // the same everywhere in a plane
+  void prepare(long step, int slot, int part) override;
+  void row(int slot, Component c, int i, int j, int k, int count, double* out) const override;
+  void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+    row(slot, c, i, j, k, 1, out);  // the same everywhere in a plane
     std::fill_n(out, count, out[0]);
   }
 
@@ -81,7 +84,10 @@ class LayeredWave : public IncidentWave {
   Vec3 e_direction_{}, h_direction_{};
   std::vector<Complex> omega_;
   std::vector<Complex> e_amplitude_, h_amplitude_;  // [k][frequency]
-  std::vector<double> e_now_, h_now_;               // [k]; H half a cell above node k
+  struct Tables {
+    std::vector<double> e, h;  // [k]; H half a cell above node k
+  };
+  std::vector<Tables> slots_;
 };
 
 LayeredWave::LayeredWave(const Lattice& lattice, const PlaneWave& wave, const WaveMedium& medium,
@@ -165,8 +171,6 @@ LayeredWave::LayeredWave(const Lattice& lattice, const PlaneWave& wave, const Wa
   const std::size_t bins = omega_.size();
   e_amplitude_.resize(bins * (m + 1));
   h_amplitude_.assign(bins * (m + 1), Complex(0.0));
-  e_now_.resize(m + 1);
-  h_now_.resize(m + 1);
   for (std::size_t plane = 0; plane <= m; ++plane) {
     const std::size_t n = downwards ? m - plane : plane;  // steps from the entry to this plane's node
     // H half a cell above node `plane` is half a step further along an upward path, half a step back on a
@@ -179,7 +183,7 @@ LayeredWave::LayeredWave(const Lattice& lattice, const PlaneWave& wave, const Wa
   }
 }
 
-void LayeredWave::prepare(long step, int part) {
+void LayeredWave::prepare(long step, int slot, int part) {
   const bool electric_part = part == 0;
   const double t = electric_part ? time_of_e_s(step, dt_s_) : time_of_h_s(step - 1, dt_s_);
   const std::size_t bins = omega_.size();
@@ -190,7 +194,9 @@ void LayeredWave::prepare(long step, int part) {
     imag[bin] = phase.imag();
   }
   const std::vector<Complex>& amplitude = electric_part ? e_amplitude_ : h_amplitude_;
-  std::vector<double>& now = electric_part ? e_now_ : h_now_;
+  Tables& tables = slots_[static_cast<std::size_t>(slot)];
+  std::vector<double>& now = electric_part ? tables.e : tables.h;
+  now.resize(static_cast<std::size_t>(count_));
   for (std::size_t plane = 0; plane < now.size(); ++plane) {
     const Complex* a = amplitude.data() + plane * bins;
     double sum = 0.0;
@@ -199,10 +205,11 @@ void LayeredWave::prepare(long step, int part) {
   }
 }
 
-void LayeredWave::row(Component c, int, int, int k, int count, double* out) const {
+void LayeredWave::row(int slot, Component c, int, int, int k, int count, double* out) const {
   const auto axis = static_cast<std::size_t>(index_of(axis_of(c)));
   const double direction = (is_electric(c) ? e_direction_ : h_direction_)[axis];
-  const std::vector<double>& now = is_electric(c) ? e_now_ : h_now_;
+  const Tables& tables = slots_[static_cast<std::size_t>(slot)];
+  const std::vector<double>& now = is_electric(c) ? tables.e : tables.h;
   for (int n = 0; n < count; ++n)
     out[n] = axis == 2 ? 0.0 : direction * now[static_cast<std::size_t>(k + n - first_k_)];
 }

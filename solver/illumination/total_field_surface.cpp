@@ -37,6 +37,8 @@ template <class Real>
 TotalFieldSurface<Real>::TotalFieldSurface(const Problem& problem, const MediaRows<Real>& e_media,
                                            const MediaRows<Real>& h_media)
     : lattice_(problem.lattice), plane_wave_(*problem.plane_wave) {
+  static std::atomic<long> n_surfaces{0};
+  id_ = ++n_surfaces;
   const PlaneWave& wave = plane_wave_;
   const int nz = lattice_.cells(Axis::z);
   const Vec3 direction = propagation_of(wave);
@@ -192,7 +194,8 @@ std::vector<typename TotalFieldSurface<Real>::Term> TotalFieldSurface<Real>::mak
 }
 
 template <class Real>
-void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electric) const {
+void TotalFieldSurface<Real>::add(int i, int j, int j_end, int slot, Real* const own[3],
+                                  bool electric) const {
   thread_local std::vector<double> incident;
   const std::size_t field = electric ? 0 : 1;
   const auto& all_gains = electric ? e_gain_ : h_gain_;
@@ -201,7 +204,7 @@ void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electri
     Index3 from{i, j, term.z.begin};
     from[at(term.normal)] = term.source_index;
     incident.resize(static_cast<std::size_t>(term.z.size()));
-    wave_->row(term.source, from[0], from[1], from[2], term.z.size(), incident.data());
+    wave_->row(slot, term.source, from[0], from[1], from[2], term.z.size(), incident.data());
     const int component = index_of(axis_of(term.corrected));
     const double* gain = all_gains[static_cast<std::size_t>(component)].data() + term.z.begin;
     Real* out = own[component] + term.z.begin;
@@ -211,38 +214,48 @@ void TotalFieldSurface<Real>::add(int i, int j, Real* const own[3], bool electri
     if (!term.x.contains(i) || !term.y.contains(j)) continue;
     const int component = index_of(axis_of(term.corrected));
     const double gain = all_gains[static_cast<std::size_t>(component)][static_cast<std::size_t>(term.target)];
-    const double value = z_face_line(term, i, electric)[j - term.y.begin];
+    const double value = z_face_value(term, i, j, j_end, slot, electric);
     own[component][term.target] += static_cast<Real>(term.factor_per_m * gain * value);
   }
 }
 
 template <class Real>
-void TotalFieldSurface<Real>::begin_step() {
-  // Counted over all surfaces of the process: one that was built where another had been must not meet its
-  // lines.
-  static std::atomic<long> steps_of_all{0};
-  generation_ = ++steps_of_all;
+void TotalFieldSurface<Real>::prepare(const StepBlock& block) {
+#pragma omp single
+  {
+    block_ = block;
+    wave_->hold(block.n);
+    is_active_.clear();
+    for (long step = block.first; step < block.end(); ++step) is_active_.push_back(wave_->is_active(step));
+  }
+  const int parts = wave_->n_parts();
+#pragma omp for schedule(dynamic, 1) nowait
+  for (int piece = 0; piece < parts * block_.n; ++piece)
+    if (is_active(piece / parts)) wave_->prepare(block_.first + piece / parts, piece / parts, piece % parts);
 }
 
 template <class Real>
-const double* TotalFieldSurface<Real>::z_face_line(const Term& term, int i, bool electric) const {
+double TotalFieldSurface<Real>::z_face_value(const Term& term, int i, int j, int j_end, int slot,
+                                             bool electric) const {
   struct Line {
-    const void* owner = nullptr;
-    long generation = -1;
-    int i = -1;
+    long owner = -1, step = -1;
+    int i = -1, j_begin = 0, j_end = 0;
     std::vector<double> values;
   };
   // [rows of E or H][face][source along x or y]
   thread_local std::array<std::array<std::array<Line, 2>, 2>, 2> lines;
   Line& line = lines[electric ? 0 : 1][term.high ? 1 : 0][axis_of(term.source) == Axis::x ? 0 : 1];
-  if (line.owner != this || line.generation != generation_ || line.i != i) {
-    line.owner = this;
-    line.generation = generation_;
+  const long step = block_.first + slot;
+  if (line.owner != id_ || line.step != step || line.i != i || j < line.j_begin || j >= line.j_end) {
+    line.owner = id_;
+    line.step = step;
     line.i = i;
-    line.values.resize(static_cast<std::size_t>(term.y.size()));
-    wave_->line_y(term.source, i, term.y.begin, term.source_index, term.y.size(), line.values.data());
+    line.j_begin = j;
+    line.j_end = std::min(std::max(j_end, j + 1), term.y.end);
+    line.values.resize(static_cast<std::size_t>(line.j_end - j));
+    wave_->line_y(slot, term.source, i, j, term.source_index, line.j_end - j, line.values.data());
   }
-  return line.values.data();
+  return line.values[static_cast<std::size_t>(j - line.j_begin)];
 }
 
 template class TotalFieldSurface<float>;

@@ -8,6 +8,7 @@
 
 #include "solver/illumination/incident_wave.hpp"
 #include "solver/media_rows.hpp"
+#include "solver/recorders/recorder.hpp"
 #include "solver/table_kernels.hpp"
 
 namespace wanewall {
@@ -20,17 +21,23 @@ class TotalFieldSurface {
   TotalFieldSurface(const Problem& problem, const MediaRows<Real>& e_media, const MediaRows<Real>& h_media);
 
   IncidentWave& wave() { return *wave_; }
-  /// Must be told, by one thread, before the rows of a step: values kept from the last step are then out of
-  /// date.
-  void begin_step();
+  /// Prepares for a block of steps, by all threads of a region; a barrier must follow.
+  void prepare(const StepBlock& block);
+  /// Whether the wave is there at a step of the block.
+  bool is_active(int slot) const { return is_active_[static_cast<std::size_t>(slot)] != 0; }
   const WaveMedium& medium() const { return medium_; }
 
   /// True when row (i, j) has terms to add to E (or H) at all.
   bool touches_e(int i, int j) const { return touches(i, j, true); }
   bool touches_h(int i, int j) const { return touches(i, j, false); }
-  /// Adds the surface terms of row (i, j); `own` are the three components' rows at k = 0.
-  void add_e(int i, int j, Real* const own[3]) const { add(i, j, own, true); }
-  void add_h(int i, int j, Real* const own[3]) const { add(i, j, own, false); }
+  /// Adds the surface terms of row (i, j) at the block's step `slot`; `own` are the three components' rows at
+  /// k = 0. Rows j .. j_end - 1 of the plane follow in the same thread; only a hint.
+  void add_e(int i, int j, int j_end, int slot, Real* const own[3]) const {
+    add(i, j, j_end, slot, own, true);
+  }
+  void add_h(int i, int j, int j_end, int slot, Real* const own[3]) const {
+    add(i, j, j_end, slot, own, false);
+  }
 
  private:
   /// One face's correction of one tangential component: field += factor gain(k) incident(source).
@@ -45,16 +52,18 @@ class TotalFieldSurface {
   };
   std::vector<Term> make_terms(bool electric) const;
   bool touches(int i, int j, bool electric) const;
-  void add(int i, int j, Real* const own[3], bool electric) const;
+  void add(int i, int j, int j_end, int slot, Real* const own[3], bool electric) const;
   /// Index range of the surface's components along an axis.
   IndexRange extent(Component c, Axis a) const;
-  /// Incident values on a z face along y at plane i. Rows of one plane come one after another, so the line is
-  /// sampled once per thread and kept.
-  const double* z_face_line(const Term& term, int i, bool electric) const;
+  /// Incident value on a z face at (i, j). Rows of one plane come one after another, so the values for those
+  /// that follow are sampled together and kept by the thread.
+  double z_face_value(const Term& term, int i, int j, int j_end, int slot, bool electric) const;
 
   Lattice lattice_;
   PlaneWave plane_wave_;
-  long generation_ = 0;
+  long id_ = 0;  ///< of all surfaces of the process: a thread's kept values may be of another
+  StepBlock block_;
+  std::vector<char> is_active_;  // [slot]
   AddIncident<Real> add_ = add_incident<Real>(best_vector_code());
   WaveMedium medium_;
   std::unique_ptr<IncidentWave> wave_;

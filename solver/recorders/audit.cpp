@@ -225,6 +225,7 @@ AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captu
   record_.sample_every = audit_sample_every(problem);
   record_.shell = problem.faces;
   const Painter painter(problem.lattice, problem.media, problem.objects, problem.background);
+  const int set = captures.new_set();
   for (Side side : all_sides) {
     if (!request.faces[static_cast<std::size_t>(index_of(side))]) continue;
     record_.faces.push_back(audit_face(problem, painter, side));
@@ -237,7 +238,7 @@ AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captu
       box.first[normal] = face.planes[p].normal_index;
       for (std::size_t t = 0; t < 2; ++t)
         box.count[static_cast<std::size_t>(index_of(tangential[t]))] = face.planes[p].shape[t];
-      Plane plane{record_.faces.size() - 1, p, captures.add(box), box.size(), {}, {}, {}};
+      Plane plane{record_.faces.size() - 1, p, captures.add(set, box), box.size(), {}, {}, {}};
       plane.block.resize(plane.size * audit_block_samples);
       plane.sum_real.assign(plane.size * record_.frequencies_hz.size(), 0.0);
       plane.sum_imag.assign(plane.size * record_.frequencies_hz.size(), 0.0);
@@ -247,63 +248,66 @@ AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captu
 }
 
 template <class Real>
-void AuditRecorder<Real>::before_step(long step) {
-  for (Plane& plane : planes_)
-    captures_.aim(plane.capture, samples(step)
-                                     ? plane.block.data() + plane.size * static_cast<std::size_t>(in_block_)
-                                     : nullptr);
+void AuditRecorder<Real>::before_block(const StepBlock& block) {
+  n_new_ = 0;
+  for (long step = block.first; step < block.end(); ++step) {
+    if (planes_.empty() || !samples(step)) continue;
+    const std::size_t place = kept_steps_.size();
+    kept_steps_.push_back(step);
+    ++n_new_;
+    for (Plane& plane : planes_)
+      if (plane.block.size() < plane.size * (place + 1)) plane.block.resize(plane.size * (place + 1));
+  }
+  // Only now: growing moves the samples.
+  for (std::size_t place = kept_steps_.size() - n_new_; place < kept_steps_.size(); ++place)
+    for (Plane& plane : planes_)
+      captures_.aim(plane.capture, static_cast<int>(kept_steps_[place] - block.first),
+                    plane.block.data() + plane.size * place);
 }
 
 template <class Real>
-void AuditRecorder<Real>::add_block(Plane& plane, std::size_t begin, std::size_t end, int n_samples) {
+void AuditRecorder<Real>::add_kept(Plane& plane, std::size_t begin, std::size_t end) {
   const bool electric = is_electric(record_.faces[plane.face].planes[plane.plane].component);
+  const std::size_t n_samples = kept_steps_.size();
+  // [frequency][sample]
+  std::vector<double> cosine, minus_sine;
+  for (const double frequency_hz : record_.frequencies_hz) {
+    for (const long step : kept_steps_) {
+      const double phase =
+          2.0 * pi * frequency_hz * (electric ? time_of_e_s(step, dt_s_) : time_of_h_s(step, dt_s_));
+      cosine.push_back(std::cos(phase));
+      minus_sine.push_back(-std::sin(phase));
+    }
+  }
   // Short pieces, so that a piece of all samples stays in cache while the frequencies take turns.
   constexpr std::size_t piece = 512;
   for (std::size_t from = begin; from < end; from += piece) {
     const std::size_t n = std::min(piece, end - from);
-    for (std::size_t f = 0; f < record_.frequencies_hz.size(); ++f) {
-      const double omega = 2.0 * pi * record_.frequencies_hz[f];
-      double* real = plane.sum_real.data() + f * plane.size + from;
-      double* imag = plane.sum_imag.data() + f * plane.size + from;
-      for (int s = 0; s < n_samples; ++s) {
-        const long step = block_step_[static_cast<std::size_t>(s)];
-        const double t = electric ? time_of_e_s(step, dt_s_) : time_of_h_s(step, dt_s_);
-        const double c = std::cos(omega * t), minus_s = -std::sin(omega * t);
-        const Real* sample = plane.block.data() + plane.size * static_cast<std::size_t>(s) + from;
-#pragma omp simd
-        for (std::size_t m = 0; m < n; ++m) {
-          const auto value = static_cast<double>(sample[m]);
-          real[m] += c * value;
-          imag[m] += minus_s * value;
-        }
-      }
-    }
+    for (std::size_t f = 0; f < record_.frequencies_hz.size(); ++f)
+      add_samples_(plane.block.data() + from, plane.size, n_samples, cosine.data() + f * n_samples,
+                   minus_sine.data() + f * n_samples, plane.sum_real.data() + f * plane.size + from,
+                   plane.sum_imag.data() + f * plane.size + from, n);
   }
 }
 
 template <class Real>
-void AuditRecorder<Real>::after_step_shared(long step, int thread, int threads) {
-  if (!samples(step) || in_block_ + 1 < audit_block_samples) return;
-  // The step just taken is the block's last; every thread writes the same number.
-  if (thread == 0) block_step_[audit_block_samples - 1] = step;
-#pragma omp barrier
+void AuditRecorder<Real>::after_block_shared(int thread, int threads) {
+  if (!is_full()) return;
   for (Plane& plane : planes_) {
     const auto t = static_cast<std::size_t>(thread), n = static_cast<std::size_t>(threads);
-    add_block(plane, plane.size * t / n, plane.size * (t + 1) / n, audit_block_samples);
+    add_kept(plane, plane.size * t / n, plane.size * (t + 1) / n);
   }
 }
 
 template <class Real>
-void AuditRecorder<Real>::after_step(long step) {
-  if (!samples(step)) return;
-  block_step_[static_cast<std::size_t>(in_block_)] = step;
-  in_block_ = (in_block_ + 1) % audit_block_samples;
+void AuditRecorder<Real>::after_block() {
+  if (is_full()) kept_steps_.clear();
 }
 
 template <class Real>
 AuditRecord AuditRecorder<Real>::finish() {
   for (Plane& plane : planes_) {
-    add_block(plane, 0, plane.size, in_block_);
+    add_kept(plane, 0, plane.size);
     AuditPlane& out = record_.faces[plane.face].planes[plane.plane];
     const double unit = record_.sample_every * dt_s_ * (is_electric(out.component) ? 1.0 : 1.0 / eta0_ohm);
     out.sums.resize(plane.sum_real.size());
@@ -326,7 +330,7 @@ double AuditRecorder<Real>::bytes(const Problem& problem) {
     for (const AuditPlane& plane : audit_face(problem, painter, side).planes)
       positions += static_cast<double>(plane.shape[0]) * plane.shape[1];
   }
-  const double per_position = audit_block_samples * sizeof(Real) +
+  const double per_position = static_cast<double>(audit_block_samples * sizeof(Real)) +
                               2.0 * sizeof(double) * static_cast<double>(request.frequencies_hz.size());
   return positions * per_position;
 }

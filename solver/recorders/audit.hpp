@@ -12,10 +12,12 @@
 #include "solver/recorders/captures.hpp"
 #include "solver/recorders/recorder.hpp"
 #include "solver/results.hpp"
+#include "solver/table_kernels.hpp"
 
 namespace wanewall {
 
-inline constexpr int audit_block_samples = 16;
+/// Samples that are kept before they are added.
+inline constexpr std::size_t audit_block_samples = 16;
 inline constexpr double audit_alias_level = 1e-8;
 
 /// Q for a problem: as asked, or from the spectra of its pulses.
@@ -29,9 +31,9 @@ template <class Real>
 class AuditRecorder : public Recorder {
  public:
   AuditRecorder(const Problem& problem, Captures<Real>& captures);
-  void before_step(long step) override;
-  void after_step_shared(long step, int thread, int threads) override;
-  void after_step(long step) override;
+  void before_block(const StepBlock& block) override;
+  void after_block_shared(int thread, int threads) override;
+  void after_block() override;
   AuditRecord finish();
   /// Bytes of buffers and sums.
   static double bytes(const Problem& problem);
@@ -41,18 +43,22 @@ class AuditRecorder : public Recorder {
     std::size_t face, plane;
     int capture;
     std::size_t size;
-    std::vector<Real> block;                 ///< [sample][position]
+    std::vector<Real> block;                 ///< [sample][position]; grows when one block of steps has more
     std::vector<double> sum_real, sum_imag;  ///< [frequency][position]
   };
   bool samples(long step) const { return step % record_.sample_every == 0; }
-  void add_block(Plane& plane, std::size_t begin, std::size_t end, int n_samples);
+  /// Whether another block like the last would make more samples than are to be kept.
+  bool is_full() const { return n_new_ > 0 && kept_steps_.size() + n_new_ > audit_block_samples; }
+  /// Adds what is kept to the sums of positions [begin, end) of a plane.
+  void add_kept(Plane& plane, std::size_t begin, std::size_t end);
 
   AuditRecord record_;
   double dt_s_;
   Captures<Real>& captures_;
+  AddSamples<Real> add_samples_ = add_samples<Real>(best_vector_code());
   std::vector<Plane> planes_;
-  int in_block_ = 0;
-  std::array<long, audit_block_samples> block_step_{};
+  std::vector<long> kept_steps_;  ///< whose samples are kept and not yet added
+  std::size_t n_new_ = 0;         ///< of them, taken in this block of steps
 };
 
 }  // namespace wanewall

@@ -1,5 +1,6 @@
 #include "solver/recorders/captures.hpp"
 
+#include <algorithm>
 #include <stdexcept>
 
 namespace wanewall {
@@ -15,7 +16,7 @@ int source_index(const Lattice& lattice, Component c, Axis a, int index) {
 }  // namespace
 
 template <class Real>
-int Captures<Real>::add(const CaptureBox& box) {
+int Captures<Real>::add(int set, const CaptureBox& box) {
   for (Axis a : all_axes) {
     const auto at = static_cast<std::size_t>(index_of(a));
     const IndexRange stored = lattice_.stored(box.component, a);
@@ -24,44 +25,71 @@ int Captures<Real>::add(const CaptureBox& box) {
       throw std::logic_error("a capture reaches beyond the lattice");
   }
   boxes_.push_back(box);
-  targets_.push_back(nullptr);
+  set_of_box_.push_back(static_cast<std::size_t>(set));
   return static_cast<int>(boxes_.size()) - 1;
 }
 
 template <class Real>
 void Captures<Real>::freeze() {
   n_j_ = static_cast<std::size_t>(lattice_.cells(Axis::y)) + 1;
-  const std::size_t rows = (static_cast<std::size_t>(lattice_.cells(Axis::x)) + 1) * n_j_;
-  for (const bool electric : {true, false}) {
-    std::vector<std::uint32_t>& start = electric ? e_start_ : h_start_;
-    std::vector<Entry>& entries = electric ? e_entries_ : h_entries_;
-    start.assign(rows + 1, 0);
-    // Two passes: count, then fill.
-    std::vector<std::uint32_t> fill;
-    for (const bool counting : {true, false}) {
-      for (std::size_t b = 0; b < boxes_.size(); ++b) {
-        const CaptureBox& box = boxes_[b];
-        if (is_electric(box.component) != electric) continue;
-        for (int x = 0; x < box.count[0]; ++x) {
-          const int i = source_index(lattice_, box.component, Axis::x, box.first[0] + x * box.stride);
-          for (int y = 0; y < box.count[1]; ++y) {
-            const int j = source_index(lattice_, box.component, Axis::y, box.first[1] + y * box.stride);
-            const std::size_t row = static_cast<std::size_t>(i) * n_j_ + static_cast<std::size_t>(j);
-            if (counting)
-              ++start[row + 1];
-            else
-              entries[fill[row]++] = {static_cast<std::uint32_t>(b),
-                                      static_cast<std::uint32_t>(x * box.count[1] + y)};
-          }
+  for (std::size_t set = 0; set < n_sets_; ++set) {
+    e_rows_.push_back(rows_of(true, set));
+    h_rows_.push_back(rows_of(false, set));
+  }
+}
+
+template <class Real>
+typename Captures<Real>::Rows Captures<Real>::rows_of(bool electric, std::size_t set) const {
+  const std::size_t n_rows = (static_cast<std::size_t>(lattice_.cells(Axis::x)) + 1) * n_j_;
+  Rows rows;
+  rows.start.assign(n_rows + 1, 0);
+  // Two passes: count, then fill.
+  std::vector<std::uint32_t> fill;
+  for (const bool counting : {true, false}) {
+    for (std::size_t b = 0; b < boxes_.size(); ++b) {
+      const CaptureBox& box = boxes_[b];
+      if (is_electric(box.component) != electric || set_of_box_[b] != set) continue;
+      for (int x = 0; x < box.count[0]; ++x) {
+        const int i = source_index(lattice_, box.component, Axis::x, box.first[0] + x * box.stride);
+        for (int y = 0; y < box.count[1]; ++y) {
+          const int j = source_index(lattice_, box.component, Axis::y, box.first[1] + y * box.stride);
+          const std::size_t row = static_cast<std::size_t>(i) * n_j_ + static_cast<std::size_t>(j);
+          if (counting)
+            ++rows.start[row + 1];
+          else
+            rows.entries[fill[row]++] = {static_cast<std::uint32_t>(b),
+                                         static_cast<std::uint32_t>(x * box.count[1] + y)};
         }
       }
-      if (counting) {
-        for (std::size_t row = 0; row < rows; ++row) start[row + 1] += start[row];
-        entries.resize(start[rows]);
-        fill.assign(start.begin(), start.end());
-      }
+    }
+    if (counting) {
+      for (std::size_t row = 0; row < n_rows; ++row) rows.start[row + 1] += rows.start[row];
+      rows.entries.resize(rows.start[n_rows]);
+      fill.assign(rows.start.begin(), rows.start.end());
     }
   }
+  return rows;
+}
+
+template <class Real>
+void Captures<Real>::begin_block(int n_steps) {
+  targets_.assign(static_cast<std::size_t>(n_steps) * boxes_.size(), nullptr);
+  is_aimed_.assign(static_cast<std::size_t>(n_steps) * n_sets_, 0);
+}
+
+template <class Real>
+void Captures<Real>::aim(int id, int slot, Real* target) {
+  const auto box = static_cast<std::size_t>(id), at = static_cast<std::size_t>(slot);
+  targets_[at * boxes_.size() + box] = target;
+  is_aimed_[at * n_sets_ + set_of_box_[box]] = 1;
+}
+
+template <class Real>
+bool Captures<Real>::touches(bool electric, int i, int j) const {
+  const std::size_t row = static_cast<std::size_t>(i) * n_j_ + static_cast<std::size_t>(j);
+  const std::vector<Rows>& sets = electric ? e_rows_ : h_rows_;
+  return std::any_of(sets.begin(), sets.end(),
+                     [&](const Rows& rows) { return rows.start[row] < rows.start[row + 1]; });
 }
 
 template <class Real>
@@ -78,8 +106,11 @@ void Captures<Real>::copy(const Entry& entry, int i, int j, const Fields<Real>& 
 
 template <class Real>
 std::size_t Captures<Real>::bytes() const {
-  return (e_entries_.size() + h_entries_.size()) * sizeof(Entry) +
-         (e_start_.size() + h_start_.size()) * sizeof(std::uint32_t);
+  std::size_t sum = 0;
+  for (const std::vector<Rows>* sets : {&e_rows_, &h_rows_})
+    for (const Rows& rows : *sets)
+      sum += rows.entries.size() * sizeof(Entry) + rows.start.size() * sizeof(std::uint32_t);
+  return sum;
 }
 
 template class Captures<float>;

@@ -28,21 +28,31 @@ class Captures {
  public:
   explicit Captures(const Lattice& lattice) : lattice_(lattice) {}
 
+  /// Boxes that are aimed at the same steps. A step at which a set has no aim costs its rows nothing.
+  int new_set() { return static_cast<int>(n_sets_++); }
   /// Registers a box; returns its number. All boxes must be added before freeze().
-  int add(const CaptureBox& box);
+  int add(int set, const CaptureBox& box);
   void freeze();
 
-  /// Where box `id` puts its values from now on, order [x][y][z], in stored units; null: nowhere. Set between
-  /// steps.
-  void aim(int id, Real* target) { targets_[static_cast<std::size_t>(id)] = target; }
+  /// Forgets all aims and makes room for those of a block. Between blocks, before the recorders.
+  void begin_block(int n_steps);
+  /// Where box `id` puts its values at the block's step `slot`, order [x][y][z], in stored units. Between
+  /// blocks.
+  void aim(int id, int slot, Real* target);
 
-  /// Called by a row when its three components of E (or H) are complete.
-  void take(bool electric, int i, int j, const Fields<Real>& fields) const {
-    const auto& row_start = electric ? e_start_ : h_start_;
+  /// Whether any box holds a value of the row.
+  bool touches(bool electric, int i, int j) const;
+  /// Called by a row when its three components of E (or H) are complete at the block's step `slot`.
+  void take(bool electric, int i, int j, int slot, const Fields<Real>& fields) const {
     const std::size_t row = static_cast<std::size_t>(i) * n_j_ + static_cast<std::size_t>(j);
-    for (std::uint32_t n = row_start[row]; n < row_start[row + 1]; ++n) {
-      const Entry& entry = (electric ? e_entries_ : h_entries_)[n];
-      if (Real* target = targets_[entry.box]) copy(entry, i, j, fields, target);
+    for (std::size_t set = 0; set < n_sets_; ++set) {
+      if (!is_aimed_[static_cast<std::size_t>(slot) * n_sets_ + set]) continue;
+      const Rows& rows = (electric ? e_rows_ : h_rows_)[set];
+      for (std::uint32_t n = rows.start[row]; n < rows.start[row + 1]; ++n) {
+        const Entry& entry = rows.entries[n];
+        if (Real* target = targets_[static_cast<std::size_t>(slot) * boxes_.size() + entry.box])
+          copy(entry, i, j, fields, target);
+      }
     }
   }
   std::size_t bytes() const;
@@ -52,14 +62,21 @@ class Captures {
     std::uint32_t box;
     std::uint32_t row_in_box;
   };
+  /// Entries of row n: [start[n], start[n + 1]).
+  struct Rows {
+    std::vector<std::uint32_t> start;
+    std::vector<Entry> entries;
+  };
+  Rows rows_of(bool electric, std::size_t set) const;
   void copy(const Entry& entry, int i, int j, const Fields<Real>& fields, Real* target) const;
 
   Lattice lattice_;
-  std::size_t n_j_ = 0;
+  std::size_t n_j_ = 0, n_sets_ = 0;
   std::vector<CaptureBox> boxes_;
-  std::vector<Real*> targets_;
-  std::vector<std::uint32_t> e_start_, h_start_;
-  std::vector<Entry> e_entries_, h_entries_;
+  std::vector<std::size_t> set_of_box_;
+  std::vector<Real*> targets_;  // [slot][box]
+  std::vector<char> is_aimed_;  // [slot][set]
+  std::vector<Rows> e_rows_, h_rows_;
 };
 
 }  // namespace wanewall

@@ -8,6 +8,7 @@ template <class Real>
 PointRecorder<Real>::PointRecorder(const Lattice& lattice, const std::vector<PointRequest>& requests,
                                    Captures<Real>& captures)
     : captures_(captures), corners_(requests.size()) {
+  const int set = captures.new_set();
   for (std::size_t n = 0; n < requests.size(); ++n) {
     PointSeries series;
     series.name = requests[n].name;
@@ -23,37 +24,48 @@ PointRecorder<Real>::PointRecorder(const Lattice& lattice, const std::vector<Poi
         box.first[a] = corner.pair[a].lower;
         box.count[a] = corner.count[a] = corner.pair[a].upper - corner.pair[a].lower + 1;
       }
-      corner.values.resize(box.size());
-      corner.capture = captures.add(box);
+      corner.size = box.size();
+      corner.capture = captures.add(set, box);
     }
   }
 }
 
 template <class Real>
-void PointRecorder<Real>::before_step(long) {
-  for (auto& point : corners_)
-    for (Corner& corner : point) captures_.aim(corner.capture, corner.values.data());
+void PointRecorder<Real>::before_block(const StepBlock& block) {
+  n_slots_ = block.n;
+  const auto n_slots = static_cast<std::size_t>(block.n);
+  for (auto& point : corners_) {
+    for (Corner& corner : point) {
+      if (corner.values.size() < n_slots * corner.size) corner.values.resize(n_slots * corner.size);
+      for (std::size_t slot = 0; slot < n_slots; ++slot)
+        captures_.aim(corner.capture, static_cast<int>(slot), corner.values.data() + slot * corner.size);
+    }
+  }
 }
 
 template <class Real>
-void PointRecorder<Real>::after_step(long) {
+double PointRecorder<Real>::value(const Corner& corner, int slot) {
+  const auto weight = [&](std::size_t a, int upper) {
+    return upper ? corner.pair[a].upper_weight : 1.0 - corner.pair[a].upper_weight;
+  };
+  const Real* at = corner.values.data() + static_cast<std::size_t>(slot) * corner.size;
+  double sum = 0.0;
+  for (int x = 0; x < corner.count[0]; ++x)
+    for (int y = 0; y < corner.count[1]; ++y)
+      for (int z = 0; z < corner.count[2]; ++z)
+        sum += weight(0, x) * weight(1, y) * weight(2, z) * static_cast<double>(*at++);
+  return sum;
+}
+
+template <class Real>
+void PointRecorder<Real>::after_block() {
   for (std::size_t n = 0; n < corners_.size(); ++n) {
     for (Component c : all_components) {
       const auto component = static_cast<std::size_t>(index_of(c));
-      const Corner& corner = corners_[n][component];
-      double sum = 0.0;
-      std::size_t at = 0;
-      for (int x = 0; x < corner.count[0]; ++x) {
-        for (int y = 0; y < corner.count[1]; ++y) {
-          for (int z = 0; z < corner.count[2]; ++z) {
-            const auto weight = [&](std::size_t a, int upper) {
-              return upper ? corner.pair[a].upper_weight : 1.0 - corner.pair[a].upper_weight;
-            };
-            sum += weight(0, x) * weight(1, y) * weight(2, z) * static_cast<double>(corner.values[at++]);
-          }
-        }
+      for (int slot = 0; slot < n_slots_; ++slot) {
+        const double sum = value(corners_[n][component], slot);
+        series_[n].values[component].push_back(is_electric(c) ? sum : sum / eta0_ohm);
       }
-      series_[n].values[component].push_back(is_electric(c) ? sum : sum / eta0_ohm);
     }
   }
 }

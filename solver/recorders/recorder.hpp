@@ -1,18 +1,26 @@
-// What every recorder does around a step.
+// What every recorder does around a block of steps.
 #pragma once
 
 namespace wanewall {
 
-/// E is at `step` and H at step + 1/2 once the step is done.
+/// Steps that are made together: first, first + 1, .. A step's slot is its place among them.
+struct StepBlock {
+  long first = 1;
+  int n = 1;
+  long end() const { return first + n; }
+};
+
+/// After a block, E is at its last step and H half a step later. Rows pass the steps of a block in any order,
+/// so whatever is kept of a step must have room of its own.
 class Recorder {
  public:
   virtual ~Recorder() = default;
-  /// One thread, before the rows move: aim captures, or not.
-  virtual void before_step(long step) = 0;
+  /// One thread, before the rows move: aim captures for each step of the block, or not.
+  virtual void before_block(const StepBlock& block) = 0;
   /// All threads of the region, after all rows have moved; `thread` of `threads`. Heavy sums go here.
-  virtual void after_step_shared(long /*step*/, int /*thread*/, int /*threads*/) {}
+  virtual void after_block_shared(int /*thread*/, int /*threads*/) {}
   /// One thread, after that.
-  virtual void after_step(long step) = 0;
+  virtual void after_block() = 0;
 };
 
 }  // namespace wanewall

@@ -13,10 +13,10 @@ class SnapshotRecorder : public Recorder {
  public:
   SnapshotRecorder(const Lattice& lattice, const std::vector<SnapshotRequest>& requests,
                    Captures<Real>& captures, Sink& sink);
-  void before_step(long step) override;
-  void after_step(long step) override;
-  /// Bytes of the buffers for a request list.
-  static double bytes(const Lattice& lattice, const std::vector<SnapshotRequest>& requests);
+  void before_block(const StepBlock& block) override;
+  void after_block() override;
+  /// Bytes of the buffers for a request list when blocks have so many steps.
+  static double bytes(const Lattice& lattice, const std::vector<SnapshotRequest>& requests, int block_steps);
 
  private:
   struct Part {
@@ -26,8 +26,9 @@ class SnapshotRecorder : public Recorder {
     CaptureBox box;
     LinearPair across;  // along the normal of a plane
     std::array<std::vector<double>, 3> positions_m;
-    std::vector<Real> values;
+    std::vector<std::vector<Real>> values;  // one for each recorded step of a block
   };
+  void hand_over(const Part& part, const std::vector<Real>& values, long step);
   static CaptureBox box_of(const Lattice& lattice, const SnapshotRequest& request, Component c);
 
   Lattice lattice_;
@@ -35,6 +36,7 @@ class SnapshotRecorder : public Recorder {
   Captures<Real>& captures_;
   Sink& sink_;
   std::vector<Part> parts_;
+  StepBlock block_;
 };
 
 }  // namespace wanewall

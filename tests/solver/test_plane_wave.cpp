@@ -77,14 +77,16 @@ TEST_CASE("The plane wave satisfies the six update equations at random places", 
   const auto now = make_homogeneous_wave(lattice, *problem.plane_wave, {});
   const auto later = make_homogeneous_wave(lattice, *problem.plane_wave, {});
   const long step = std::lround(problem.plane_wave->pulse.delay_s / lattice.dt_s) + 20;
+  now->hold(1);
+  later->hold(1);
   for (int part = 0; part < now->n_parts(); ++part) {
-    now->prepare(step, part);
-    later->prepare(step + 1, part);
+    now->prepare(step, 0, part);
+    later->prepare(step + 1, 0, part);
   }
   // now: E at n, H at n - 1/2; later: E at n + 1, H at n + 1/2.
   const auto sample = [](const IncidentWave& wave, Component c, Index3 at) {
     double out = 0.0;
-    wave.row(c, at[0], at[1], at[2], 1, &out);
+    wave.row(0, c, at[0], at[1], at[2], 1, &out);
     return out;
   };
   double worst = 0.0, largest = 0.0;

@@ -123,9 +123,10 @@ struct Everything {
   std::vector<Snapshot> snapshots;
 };
 
-Everything run_all(Problem p, int threads, Schedule schedule) {
+Everything run_all(Problem p, int threads, Schedule schedule, std::optional<TileShape> tiles = {}) {
   p.threads = threads;
   p.schedule = schedule;
+  p.tiles = tiles;
   // The whole lattice at the end, every component.
   Vec3 lo{}, hi{};
   for (Axis a : all_axes) {
@@ -184,6 +185,14 @@ TEST_CASE("Fields and recordings do not depend on threads or schedule", "[schedu
     for (const Schedule schedule : {Schedule::plain, Schedule::fused}) {
       CAPTURE(static_cast<int>(kind), threads, name_of(schedule));
       check_same(reference, run_all(p, threads, schedule));
+    }
+  }
+  // Tiles that cut near walls and layers, thinner than a layer, of one step, and larger than the lattice.
+  for (const TileShape tiles : {TileShape{5, 3, 4}, TileShape{1, 1, 7}, TileShape{16, 9, 1},
+                                TileShape{4, 100, 13}, TileShape{100, 100, 32}}) {
+    for (const int threads : {1, 2, 3}) {
+      CAPTURE(static_cast<int>(kind), threads, tiles.x_rows, tiles.y_rows, tiles.steps);
+      check_same(reference, run_all(p, threads, Schedule::tiles, tiles));
     }
   }
 }
