@@ -245,7 +245,7 @@ void Marcher<Real>::fill_task(int i, int j, bool electric, RowTask<Real>& t) {
   t.inv_x = x.inv;
   t.inv_y = y.inv;
   t.inv_z = (electric ? e_stretch_ : h_stretch_)[2].inv.data();
-  t.ahead = layout_.row;
+  t.psi_ahead = 2 * layout_.row;
   auto& memory = electric ? e_memory_ : h_memory_;
   if (x.slot >= 0) {
     t.x_b = x.b;
@@ -372,19 +372,19 @@ void Marcher<Real>::solve_columns(Axis axis, bool high, int across, Real* differ
 }
 
 template <class Real>
-void Marcher<Real>::advance_e(const RowBlock& block, long step) {
+void Marcher<Real>::advance_e(const RowBlock& block, long step, const Ahead& ahead) {
   const int slot = static_cast<int>(step - block_.first);
   const bool single = block.i1 - block.i0 == 1 && column_slot_[0][static_cast<std::size_t>(block.i0)] < 0;
   for (int j = block.j0; j < block.j1;) {
     const int run_end = std::min(j_run_end_[static_cast<std::size_t>(j)], block.j1);
     if (run_end == j) {
       const int group_end = j_group_end_[static_cast<std::size_t>(j)];
-      advance_e_group({block.i0, block.i1, j, group_end}, slot);
+      advance_e_group({block.i0, block.i1, j, group_end}, slot, ahead);
       j = group_end;
     } else if (single) {
-      for (; j < run_end; ++j) advance_e_row(block.i0, j, run_end, slot, {}, layout_.row);
+      for (; j < run_end; ++j) advance_e_row(block.i0, j, run_end, slot, {}, ahead);
     } else {
-      advance_e_group({block.i0, block.i1, j, run_end}, slot);
+      advance_e_group({block.i0, block.i1, j, run_end}, slot, ahead);
       j = run_end;
     }
   }
@@ -392,7 +392,7 @@ void Marcher<Real>::advance_e(const RowBlock& block, long step) {
 
 /// Rows of a group along x and one along y, or single ones along y.
 template <class Real>
-void Marcher<Real>::advance_e_group(const RowBlock& block, int slot) {
+void Marcher<Real>::advance_e_group(const RowBlock& block, int slot, const Ahead& ahead) {
   // The row next to a one_way wall comes before the row on it.
   const auto in_order = [&](Axis axis, int index, int begin, int end) {
     return begin == 0 && end > 1 && kind(side_of(axis, false)) == FaceKind::one_way ? begin + end - 1 - index
@@ -408,7 +408,7 @@ void Marcher<Real>::advance_e_group(const RowBlock& block, int slot) {
     for (int j = block.j0; j < block.j1; ++j)
       for (int i = block.i0; i < block.i1; ++i)
         advance_e_row(in_order(Axis::x, i, block.i0, block.i1), in_order(Axis::y, j, block.j0, block.j1), 0,
-                      slot, {}, layout_.row);
+                      slot, {}, ahead);
     return;
   }
   const std::ptrdiff_t pair = 2 * layout_.row;
@@ -432,7 +432,7 @@ void Marcher<Real>::advance_e_group(const RowBlock& block, int slot) {
       advance_e_row(i, j, 0, slot,
                     {x ? x_pairs + (i - block.i0) * pair : nullptr,
                      y ? y_pairs + ((i - block.i0) * n_j + (j - block.j0)) * pair : nullptr},
-                    n_i > 1 ? layout_.plane : layout_.row);
+                    ahead);
     }
   }
 }
@@ -471,10 +471,12 @@ void Marcher<Real>::mirror_h(int i, int j, RowTask<Real>& t) {
 
 template <class Real>
 void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given& given,
-                                  std::ptrdiff_t ahead) {
+                                  const Ahead& ahead) {
   RowTask<Real> t;
   fill_task(i, j, true, t);
-  t.ahead = ahead;
+  t.ahead = layout_.at(ahead.planes, ahead.rows);
+  t.ahead_begin = layout_.row * ahead.part / ahead.parts;
+  t.ahead_end = layout_.row * (ahead.part + 1) / ahead.parts;
   if (given.x) {
     t.x_given_first = given.x;
     t.x_given_second = given.x + layout_.row;

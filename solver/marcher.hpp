@@ -51,7 +51,7 @@ class Marcher : public RowWork {
   /// First component and cell that is not finite, as text; empty when all are.
   std::string find_not_finite() const;
 
-  void advance_e(const RowBlock& block, long step) override;
+  void advance_e(const RowBlock& block, long step, const Ahead& ahead) override;
   void advance_h(const RowBlock& block, long step) override;
 
   /// Bytes held, by kind.
@@ -78,8 +78,8 @@ class Marcher : public RowWork {
 
   void make_places();
   void make_extras();
-  void advance_e_group(const RowBlock& block, int slot);
-  void advance_e_row(int i, int j, int j_end, int slot, const Given& given, std::ptrdiff_t ahead);
+  void advance_e_group(const RowBlock& block, int slot, const Ahead& ahead);
+  void advance_e_row(int i, int j, int j_end, int slot, const Given& given, const Ahead& ahead);
   void mirror_h(int i, int j, RowTask<Real>& t);
   void solve_columns(Axis axis, bool high, int across, Real* difference, std::ptrdiff_t difference_step);
   const MoebiusColumns<Real>& columns(Axis axis, bool high) const {

@@ -37,7 +37,10 @@ struct RowTask {
   const Real* inv_z = nullptr;  ///< along z, one per k, aligned and padded like a row
   const MediaSpan<Real>* spans = nullptr;
   int n_spans = 0;
-  std::ptrdiff_t ahead = 0;  ///< from this row to the one that will be advanced next; only a hint
+  /// Only a hint: a row that will be wanted soon lies `ahead` from this one; it is fetched for k in
+  /// [ahead_begin, ahead_end).
+  std::ptrdiff_t ahead = 0, ahead_begin = 0, ahead_end = 0;
+  std::ptrdiff_t psi_ahead = 0;  ///< from this row's layer memory to the next row's; only a hint
   // Layer memory, one row per differentiated component; null outside the layers of that axis.
   //   psi(n) = b psi(n-1) + c difference,  c in 1/m; "first" belongs to the component next(axis), "second" to
   //   the component after that.

@@ -14,7 +14,7 @@ int at(const std::vector<int>& begin, int group) {
 /// All E, then all H: the reference.
 void plain_sweep(const RowGroups& rows, int lo, int hi, long step, RowWork& work) {
   const int n_j = rows.j_begin.back();
-  for (int a = lo; a < hi; ++a) work.advance_e({at(rows.i_begin, a), at(rows.i_begin, a + 1), 0, n_j}, step);
+  for (int a = lo; a < hi; ++a) work.advance_e({at(rows.i_begin, a), at(rows.i_begin, a + 1), 0, n_j}, step, {});
 #pragma omp barrier
   work.advance_h({at(rows.i_begin, lo), at(rows.i_begin, hi), 0, n_j}, step);
 #pragma omp barrier
@@ -31,7 +31,7 @@ void fused_sweep(const RowGroups& rows, int lo, int hi, long step, RowWork& work
     const int j_lo = at(rows.j_begin, b_lo), j_hi = at(rows.j_begin, b_hi);
     for (int a = lo; a < hi; ++a) {
       const int i_lo = at(rows.i_begin, a), i_hi = at(rows.i_begin, a + 1);
-      work.advance_e({i_lo, i_hi, j_lo, j_hi}, step);
+      work.advance_e({i_lo, i_hi, j_lo, j_hi}, step, {});
       work.advance_h(
           {std::max(i_lo - 1, first), i_hi - 1, std::max(j_lo - 1, 0), b_hi == rows.n_j() ? n_j : j_hi - 1},
           step);
@@ -126,8 +126,10 @@ void TileSweep::prepare(const TileShape& shape, long first_step, int n_steps) {
   y_ = cut(rows_.j_begin, joined_[1], shape.y_rows, n_steps);
   first_step_ = first_step;
   n_steps_ = n_steps;
-  n_strips_ = joined_[0] || joined_[1] ? std::min(n_steps, threads_) : x_.n();
-  n_along_ = joined_[1] ? x_.n() : y_.n();
+  moves_along_x_ = joined_[1] || (!joined_[0] && shape.x_rows < shape.y_rows);
+  width_ = moves_along_x_ ? shape.x_rows : shape.y_rows;
+  n_along_ = moves_along_x_ ? x_.n() : y_.n();
+  n_strips_ = joined_[0] || joined_[1] ? std::min(n_steps, threads_) : moves_along_x_ ? y_.n() : x_.n();
   if (progress_size_ < n_strips_) {
     progress_ = std::make_unique<Progress[]>(static_cast<std::size_t>(n_strips_));
     progress_size_ = n_strips_;
@@ -141,12 +143,10 @@ void TileSweep::sweep(RowWork& work) {
     for (int q = 0; q < n_along_; ++q) {
       if (p > 0) wait_for(progress_[static_cast<std::size_t>(p) - 1].done, q + 1);
       const int s_begin = n_steps_ * p / n_strips_, s_end = n_steps_ * (p + 1) / n_strips_;
-      if (joined_[0])
-        advance_tile(0, q, s_begin, s_end, work);
-      else if (joined_[1])
-        advance_tile(q, 0, s_begin, s_end, work);
+      if (joined_[0] || joined_[1])
+        advance_tile(moves_along_x_ ? q : 0, moves_along_x_ ? 0 : q, s_begin, s_end, work);
       else
-        advance_tile(p, q, 0, n_steps_, work);
+        advance_tile(moves_along_x_ ? q : p, moves_along_x_ ? p : q, 0, n_steps_, work);
       progress_[static_cast<std::size_t>(p)].done.store(q + 1, std::memory_order_release);
     }
   }
@@ -157,11 +157,14 @@ void TileSweep::advance_tile(int a, int b, int s_begin, int s_end, RowWork& work
   for (int s = s_begin; s < s_end; ++s) {
     const Range ex = x_.e(a, s), hx = x_.h(a, s), ey = y_.e(b, s), hy = y_.h(b, s);
     const long step = first_step_ + s;
+    // The next tile's first step wants what lies one tile further, s groups up from here in both axes. Each
+    // step fetches its share.
+    const Ahead ahead{s + (moves_along_x_ ? width_ : 0), s + (moves_along_x_ ? 0 : width_), s, n_steps_};
     for (int x = std::min(ex.begin, hx.begin + 1); x < std::max(ex.end, hx.end + 1); ++x) {
       if (!ey.empty() && ex.begin <= x && x < ex.end)
         work.advance_e({at(rows_.i_begin, x), at(rows_.i_begin, x + 1), at(rows_.j_begin, ey.begin),
                         at(rows_.j_begin, ey.end)},
-                       step);
+                       step, ahead);
       if (!hy.empty() && hx.begin < x && x <= hx.end)
         work.advance_h({at(rows_.i_begin, x - 1), at(rows_.i_begin, x), at(rows_.j_begin, hy.begin),
                         at(rows_.j_begin, hy.end)},

@@ -22,12 +22,19 @@ struct RowBlock {
   int i0 = 0, i1 = 0, j0 = 0, j1 = 0;
 };
 
+/// Only a hint: when row (i, j) is advanced, row (i + planes, j + rows) will be wanted soon, and this is the
+/// part-th of `parts` occasions to fetch it.
+struct Ahead {
+  int planes = 0, rows = 1;
+  int part = 0, parts = 1;
+};
+
 /// The work of rows. Called from many threads, for different rows at once.
 class RowWork {
  public:
   virtual ~RowWork() = default;
   /// Brings E of a block from step - 1 to step. A block is one group along x times whole groups along y.
-  virtual void advance_e(const RowBlock& block, long step) = 0;
+  virtual void advance_e(const RowBlock& block, long step, const Ahead& ahead) = 0;
   /// Brings H of a block from step - 1/2 to step + 1/2.
   virtual void advance_h(const RowBlock& block, long step) = 0;
 };
@@ -60,8 +67,9 @@ void sweep(Schedule schedule, const RowGroups& rows, const std::vector<int>& sla
 ///                                            H of groups [cut(a) - s - 1, cut(a+1) - s - 1),
 /// along x, the same with b along y, cut off at the ends of the lattice. Tile (a, b) may start when (a-1, b)
 /// and (a, b-1) are done. Groups are never cut, so a Moebius layer is one thick row.
-/// Threads take strips of equal a and follow one another along b; each waits only for the strip before its
-/// own.
+/// Threads take strips of tiles along the axis on which tiles are short, x or y, and follow one another; each
+/// waits only for the strip before its own. With tiles one plane thick, a strip is a wave front: what it needs
+/// next to the core is as many planes of its own width as there are steps.
 ///
 /// A periodic axis is not cut: its tiles hold all of it. Then threads take parts of the steps in place of
 /// strips.
@@ -109,6 +117,8 @@ class TileSweep {
   Cuts x_, y_;
   long first_step_ = 0;
   int n_steps_ = 0, n_strips_ = 0, n_along_ = 0;
+  int width_ = 0;  ///< of a tile along the strip
+  bool moves_along_x_ = false;
   std::atomic<int> next_strip_{0};
   std::unique_ptr<Progress[]> progress_;
   int progress_size_ = 0;
