@@ -1,46 +1,11 @@
 // Included by row_kernels.inl, within its vector namespace.
 
-/// Ex gains -psi of dHy/dz, Ey gains +psi of dHx/dz.
-template <class Real>
-void z_layer_e(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
-  const Real* __restrict hx = t.other[0] + z.begin, * __restrict hy = t.other[1] + z.begin;
-  Real* __restrict ex = t.own[0] + z.begin, * __restrict ey = t.own[1] + z.begin;
-  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
-  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
-#pragma omp simd
-  for (int m = 0; m < z.n; ++m) {
-    const Real memory_x = b[m] * psi_x[m] + c[m] * (hy[m] - hy[m - 1]);
-    const Real memory_y = b[m] * psi_y[m] + c[m] * (hx[m] - hx[m - 1]);
-    psi_x[m] = memory_x;
-    psi_y[m] = memory_y;
-    ex[m] -= gain_x[m] * memory_x;
-    ey[m] += gain_y[m] * memory_y;
-  }
-}
-
-/// Hx gains +psi of dEy/dz, Hy gains -psi of dEx/dz.
-template <class Real>
-void z_layer_h(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
-  const Real* __restrict ex = t.other[0] + z.begin, * __restrict ey = t.other[1] + z.begin;
-  Real* __restrict hx = t.own[0] + z.begin, * __restrict hy = t.own[1] + z.begin;
-  Real* __restrict psi_x = z.psi_x, * __restrict psi_y = z.psi_y;
-  const Real* __restrict b = z.b, * __restrict c = z.c, * __restrict gain_x = z.gain_x, * __restrict gain_y = z.gain_y;
-#pragma omp simd
-  for (int m = 0; m < z.n; ++m) {
-    const Real memory_x = b[m] * psi_x[m] + c[m] * (ey[m + 1] - ey[m]);
-    const Real memory_y = b[m] * psi_y[m] + c[m] * (ex[m + 1] - ex[m]);
-    psi_x[m] = memory_x;
-    psi_y[m] = memory_y;
-    hx[m] += gain_x[m] * memory_x;
-    hy[m] -= gain_y[m] * memory_y;
-  }
-}
-
 /// One forward and one backward sweep over the layer per vector of k; both components at once, since each
 /// sweep waits for itself.
 template <class Real>
-void moebius_columns(const ColumnTask<Real>& t) {
+void moebius_columns(const ColumnTask<Real>& task) {
   using V = Vector<Real>;
+  const ColumnTask<Real> t = task;  // of our own, so that no store can change it
   const MoebiusNumbers<Real>& number = t.numbers;
   const Real quarter = Real(0.25);
   typename V::Aligned forward[most_moebius_cells][2];
@@ -100,126 +65,185 @@ struct Block {
   }
 };
 
+/// What one component of z_moebius_blocks keeps between its sweeps.
+template <class Real, int bytes, int most>
+struct ZMoebiusPart {
+  using Any = typename Block<Real, bytes>::Any;
+  Any df[most], even[most], odd[most];  // two sums, so that one addition need not wait for the last
+  alignas(64) Real rest[most * Block<Real, bytes>::width];
+};
+
+template <class Real, int bytes, bool up, int most>
+inline __attribute__((always_inline)) void z_moebius_begin(const Real* h, const Real* a, const Real* d, int blocks,
+                                                           ZMoebiusPart<Real, bytes, most>& part) {
+  using B = Block<Real, bytes>;
+  using Any = typename B::Any;
+  constexpr int width = B::width;
+  Any sum[most + 2];  // A + D with nothing at both ends
+  sum[0] = sum[blocks + 1] = Any{};
+#pragma GCC unroll 4
+  for (int v = 0; v < blocks; ++v) sum[v + 1] = B::load(a + v * width) + B::load(d + v * width);
+#pragma GCC unroll 4
+  for (int v = 0; v < blocks; ++v) {
+    part.df[v] = B::load(h + v * width) - B::load(h + v * width - 1);
+    const Any inner = B::template neighbour<!up>(sum[v], sum[v + 1], sum[v + 2]);
+    const Any f = (B::load(a + v * width) - B::load(d + v * width)) + inner;
+    B::store(part.rest + v * width, part.df[v] - Real(0.25) * f);
+    part.even[v] = part.odd[v] = Any{};
+  }
+}
+
+template <class Real, int bytes, bool up, int most>
+inline __attribute__((always_inline)) void z_moebius_end(Real* own, const Real* gain, const Real* inv_z, Real* a,
+                                                         Real* d, Real sign, int blocks,
+                                                         const MoebiusNumbers<Real>& numbers,
+                                                         const ZMoebiusPart<Real, bytes, most>& part) {
+  using B = Block<Real, bytes>;
+  using Any = typename B::Any;
+  Any g[most + 2];
+  g[0] = g[blocks + 1] = Any{};
+#pragma GCC unroll 4
+  for (int v = 0; v < blocks; ++v) g[v + 1] = part.even[v] + part.odd[v];
+#pragma GCC unroll 4
+  for (int v = 0; v < blocks; ++v) {
+    const int m = v * B::width;
+    const Any here = g[v + 1];
+    const Any outer = B::template neighbour<up>(g[v], here, g[v + 2]);
+    const Any change = B::load(gain + m) * B::load(inv_z + m) * (here - part.df[v]);
+    B::store(a + m, B::load(numbers.b + m) * B::load(a + m) + B::load(numbers.r + m) * (here + outer));
+    B::store(d + m,
+             B::load(numbers.b_inverse + m) * B::load(d + m) + B::load(numbers.r_inverse + m) * (outer - here));
+    B::store(own + m, B::load(own + m) + sign * change);
+  }
+}
+
 /// own += sign gain inv_z (M^-1 df - df) for both components; `n_blocks` blocks, or as many as the task says
-/// when zero. Ex has -dHy/dz, Ey has +dHx/dz.
+/// when zero. Ex has -dHy/dz, Ey has +dHx/dz. Pointers lead to entry 0 of the task.
 template <class Real, int bytes, bool up, int n_blocks>
-void z_moebius_blocks(const RowTask<Real>& t, const ZMoebiusTask<Real>& z) {
+void z_moebius_blocks(Real* ex, Real* ey, const Real* hx, const Real* hy, const Real* inv_z,
+                      const ZMoebiusTask<Real>& task) {
   using B = Block<Real, bytes>;
   using Any = typename B::Any;
   constexpr int width = B::width;
   constexpr int most = n_blocks > 0 ? n_blocks : (most_moebius_cells + width - 1) / width;
+  const ZMoebiusTask<Real> z = task;  // of our own, so that no store can change it
   const int blocks = n_blocks > 0 ? n_blocks : z.n / width;
-  Real* const own[2]{t.own[0] + z.begin, t.own[1] + z.begin};
-  const Real* const h[2]{t.other[1] + z.begin, t.other[0] + z.begin};
-  const Real* const gain[2]{z.gain_x, z.gain_y};
-  alignas(64) Real rest[2][most * width];
-  Any df[2][most], g[2][most], odd[2][most];
-  for (int c = 0; c < 2; ++c) {
-    const Real *a = z.memory + 2 * c * z.n, *d = a + z.n;
-    if (z.fits) {
-      for (int v = 0; v < blocks; ++v)
-        df[c][v] = B::load(h[c] + v * width) - B::load(h[c] + v * width - 1);
-    } else {
-      alignas(64) Real values[most * width]{};
-      for (int m = z.first; m < z.last; ++m) values[m] = h[c][m] - h[c][m - 1];
-      for (int v = 0; v < blocks; ++v) df[c][v] = B::load(values + v * width);
-    }
-    Any sum[most + 2];  // A + D with nothing at both ends
-    sum[0] = sum[blocks + 1] = Any{};
-    for (int v = 0; v < blocks; ++v) sum[v + 1] = B::load(a + v * width) + B::load(d + v * width);
-    for (int v = 0; v < blocks; ++v) {
-      const Any inner = B::template neighbour<!up>(sum[v], sum[v + 1], sum[v + 2]);
-      const Any f = (B::load(a + v * width) - B::load(d + v * width)) + inner;
-      B::store(rest[c] + v * width, df[c][v] - Real(0.25) * f);
-      g[c][v] = odd[c][v] = Any{};
-    }
-  }
-  // Two sums, so that one addition need not wait for the last.
-  const auto add = [&](int source, Any(&sum)[2][most]) {
-    const Real x = rest[0][source], y = rest[1][source];
-    for (int v = 0; v < blocks; ++v) {
-      const Any column = B::load(z.dense + source * z.n + v * width);
-      sum[0][v] += x * column;
-      sum[1][v] += y * column;
-    }
-  };
+  ZMoebiusPart<Real, bytes, most> x{}, y{};
+  z_moebius_begin<Real, bytes, up, most>(hy, z.memory, z.memory + z.n, blocks, x);
+  z_moebius_begin<Real, bytes, up, most>(hx, z.memory + 2 * z.n, z.memory + 3 * z.n, blocks, y);
   int source = z.first;
   for (; source + 1 < z.last; source += 2) {
-    add(source, g);
-    add(source + 1, odd);
-  }
-  if (source < z.last) add(source, g);
-  for (int c = 0; c < 2; ++c)
-    for (int v = 0; v < blocks; ++v) g[c][v] += odd[c][v];
-  for (int c = 0; c < 2; ++c) {
-    Real *a = z.memory + 2 * c * z.n, *d = a + z.n;
-    const Real sign = c == 0 ? Real(-1) : Real(1);
+#pragma GCC unroll 4
     for (int v = 0; v < blocks; ++v) {
-      const Any before = v > 0 ? g[c][v - 1] : Any{}, after = v + 1 < blocks ? g[c][v + 1] : Any{};
-      const Any outer = B::template neighbour<up>(before, g[c][v], after);
-      const auto at = [&](const Real* numbers) { return B::load(numbers + v * width); };
-      B::store(a + v * width, at(z.numbers.b) * at(a) + at(z.numbers.r) * (g[c][v] + outer));
-      B::store(d + v * width, at(z.numbers.b_inverse) * at(d) + at(z.numbers.r_inverse) * (outer - g[c][v]));
-    }
-    if (z.fits) {
-      for (int v = 0; v < blocks; ++v) {
-        const Any change = B::load(gain[c] + v * width) * B::load(t.inv_z + z.begin + v * width) * (g[c][v] - df[c][v]);
-        B::store(own[c] + v * width, B::load(own[c] + v * width) + sign * change);
-      }
-    } else {
-      for (int m = z.first; m < z.last; ++m) {
-        const Real change = gain[c][m] * t.inv_z[z.begin + m] * (g[c][m / width][m % width] - df[c][m / width][m % width]);
-        own[c][m] += sign * change;
-      }
+      const Any even = B::load(z.dense + source * z.n + v * width);
+      const Any odd = B::load(z.dense + (source + 1) * z.n + v * width);
+      x.even[v] += x.rest[source] * even;
+      y.even[v] += y.rest[source] * even;
+      x.odd[v] += x.rest[source + 1] * odd;
+      y.odd[v] += y.rest[source + 1] * odd;
     }
   }
+  if (source < z.last) {
+#pragma GCC unroll 4
+    for (int v = 0; v < blocks; ++v) {
+      const Any even = B::load(z.dense + source * z.n + v * width);
+      x.even[v] += x.rest[source] * even;
+      y.even[v] += y.rest[source] * even;
+    }
+  }
+  z_moebius_end<Real, bytes, up, most>(ex, z.gain_x, inv_z, z.memory, z.memory + z.n, Real(-1), blocks, z.numbers,
+                                       x);
+  z_moebius_end<Real, bytes, up, most>(ey, z.gain_y, inv_z, z.memory + 2 * z.n, z.memory + 3 * z.n, Real(1), blocks,
+                                       z.numbers, y);
 }
 
 template <class Real, int bytes, bool up>
-void z_moebius_direction(const RowTask<Real>& t, const ZMoebiusTask<Real>& z) {
+void z_moebius_direction(Real* ex, Real* ey, const Real* hx, const Real* hy, const Real* inv_z,
+                         const ZMoebiusTask<Real>& z) {
   switch (z.n / Block<Real, bytes>::width) {
-    case 1: return z_moebius_blocks<Real, bytes, up, 1>(t, z);
-    case 2: return z_moebius_blocks<Real, bytes, up, 2>(t, z);
-    case 3: return z_moebius_blocks<Real, bytes, up, 3>(t, z);
-    case 4: return z_moebius_blocks<Real, bytes, up, 4>(t, z);
-    default: return z_moebius_blocks<Real, bytes, up, 0>(t, z);
+    case 1: return z_moebius_blocks<Real, bytes, up, 1>(ex, ey, hx, hy, inv_z, z);
+    case 2: return z_moebius_blocks<Real, bytes, up, 2>(ex, ey, hx, hy, inv_z, z);
+    case 3: return z_moebius_blocks<Real, bytes, up, 3>(ex, ey, hx, hy, inv_z, z);
+    case 4: return z_moebius_blocks<Real, bytes, up, 4>(ex, ey, hx, hy, inv_z, z);
+    default: return z_moebius_blocks<Real, bytes, up, 0>(ex, ey, hx, hy, inv_z, z);
   }
+}
+
+template <class Real>
+void z_moebius_at(Real* ex, Real* ey, const Real* hx, const Real* hy, const Real* inv_z,
+                  const ZMoebiusTask<Real>& z) {
+  constexpr int line = 64 / static_cast<int>(sizeof(Real));
+  if (WANEWALL_VECTOR_BYTES == 64 && z.n % line == 0)
+    z.outwards_is_up ? z_moebius_direction<Real, 64, true>(ex, ey, hx, hy, inv_z, z)
+                     : z_moebius_direction<Real, 64, false>(ex, ey, hx, hy, inv_z, z);
+  else
+    z.outwards_is_up ? z_moebius_direction<Real, moebius_block_bytes, true>(ex, ey, hx, hy, inv_z, z)
+                     : z_moebius_direction<Real, moebius_block_bytes, false>(ex, ey, hx, hy, inv_z, z);
+}
+
+/// A window that reaches beyond the row works on a copy.
+template <class Real>
+void z_moebius_in_short_row(const RowTask<Real>& t, const ZMoebiusTask<Real>& z) {
+  constexpr int room = most_moebius_cells + 64 / static_cast<int>(sizeof(Real)) + 1;
+  Real copy[5][room]{};  // Ex, Ey, Hx, Hy, 1/dz; one entry in front
+  const Real* from[5]{t.own[0], t.own[1], t.other[0], t.other[1], t.inv_z};
+  for (int array = 0; array < 5; ++array)
+    for (int m = array == 2 || array == 3 ? z.first - 1 : z.first; m < z.last; ++m)
+      copy[array][m + 1] = from[array][z.begin + m];
+  z_moebius_at(copy[0] + 1, copy[1] + 1, copy[2] + 1, copy[3] + 1, copy[4] + 1, z);
+  for (int array = 0; array < 2; ++array)
+    for (int m = z.first; m < z.last; ++m) t.own[array][z.begin + m] = copy[array][m + 1];
 }
 
 template <class Real>
 void z_moebius_e(const RowTask<Real>& t, const ZMoebiusTask<Real>& z) {
   constexpr int line = 64 / static_cast<int>(sizeof(Real));
   for (int m = 0; m < 4 * z.n; m += line) __builtin_prefetch(z.memory + z.ahead + m, 1);
-  if (WANEWALL_VECTOR_BYTES == 64 && z.n % line == 0)
-    z.outwards_is_up ? z_moebius_direction<Real, 64, true>(t, z) : z_moebius_direction<Real, 64, false>(t, z);
+  if (z.fits)
+    z_moebius_at(t.own[0] + z.begin, t.own[1] + z.begin, t.other[0] + z.begin, t.other[1] + z.begin,
+                 t.inv_z + z.begin, z);
   else
-    z.outwards_is_up ? z_moebius_direction<Real, moebius_block_bytes, true>(t, z)
-                     : z_moebius_direction<Real, moebius_block_bytes, false>(t, z);
+    z_moebius_in_short_row(t, z);
 }
 
-/// The H side in whole blocks: psi acts before it takes in the new difference. Hx gains dEy/dz, Hy loses
-/// dEx/dz.
-template <class Real>
-void z_layer_h_late(const RowTask<Real>& t, const ZLayerTask<Real>& z) {
-  using B = Block<Real, moebius_block_bytes>;
-  const Real *ex = t.other[0] + z.begin, *ey = t.other[1] + z.begin;
-  Real *hx = t.own[0] + z.begin, *hy = t.own[1] + z.begin;
+/// Entries m .. of z_layer, one block of them.
+template <class B, class Real, bool electric, bool late>
+inline __attribute__((always_inline)) void z_layer_block(Real* own_x, Real* own_y, const Real* other_x,
+                                                         const Real* other_y, const ZLayerTask<Real>& z, int m) {
+  // Difference across the entry: E lies on nodes, between the H half a cell above and below.
+  constexpr int up = electric ? 0 : 1, down = electric ? -1 : 0;
+  const auto old_x = B::load(z.psi_x + m), old_y = B::load(z.psi_y + m);
+  const auto b = B::load(z.b + m), c = B::load(z.c + m);
+  const auto new_x = b * old_x + c * (B::load(other_y + m + up) - B::load(other_y + m + down));
+  const auto new_y = b * old_y + c * (B::load(other_x + m + up) - B::load(other_x + m + down));
+  B::store(z.psi_x + m, new_x);
+  B::store(z.psi_y + m, new_y);
+  const auto change_x = B::load(z.gain_x + m) * (late ? old_x : new_x);
+  const auto change_y = B::load(z.gain_y + m) * (late ? old_y : new_y);
+  const auto x = B::load(own_x + m), y = B::load(own_y + m);
+  B::store(own_x + m, electric ? x - change_x : x + change_x);
+  B::store(own_y + m, electric ? y + change_y : y - change_y);
+}
+
+/// Parts of rows with one memory per component, in blocks; what no block fills is done one by one.
+///   E: Ex gains -psi of dHy/dz, Ey +psi of dHx/dz;  H: Hx gains +psi of dEy/dz, Hy -psi of dEx/dz.
+/// `late`: psi acts before it takes in the new difference.
+template <class Real, bool electric, bool late>
+void z_layer(const RowTask<Real>& t, const ZLayerTask<Real>& task) {
+  using Line = Block<Real, 64>;
+  using Half = Block<Real, moebius_block_bytes>;
+  using Single = Block<Real, static_cast<int>(sizeof(Real))>;
+  const ZLayerTask<Real> z = task;  // of our own, so that no store can change it
+  Real* const own_x = t.own[0] + z.begin;
+  Real* const own_y = t.own[1] + z.begin;
+  const Real *const other_x = t.other[0] + z.begin, *const other_y = t.other[1] + z.begin;
   __builtin_prefetch(z.psi_x + z.ahead, 1);
   __builtin_prefetch(z.psi_y + z.ahead, 1);
   int m = 0;
-  for (; m + B::width <= z.n; m += B::width) {
-    const auto old_x = B::load(z.psi_x + m), old_y = B::load(z.psi_y + m);
-    const auto b = B::load(z.b + m), c = B::load(z.c + m);
-    B::store(z.psi_x + m, b * old_x + c * (B::load(ey + m + 1) - B::load(ey + m)));
-    B::store(z.psi_y + m, b * old_y + c * (B::load(ex + m + 1) - B::load(ex + m)));
-    B::store(hx + m, B::load(hx + m) + B::load(z.gain_x + m) * old_x);
-    B::store(hy + m, B::load(hy + m) - B::load(z.gain_y + m) * old_y);
-  }
-  for (; m < z.n; ++m) {
-    const Real old_x = z.psi_x[m], old_y = z.psi_y[m];
-    z.psi_x[m] = z.b[m] * old_x + z.c[m] * (ey[m + 1] - ey[m]);
-    z.psi_y[m] = z.b[m] * old_y + z.c[m] * (ex[m + 1] - ex[m]);
-    hx[m] += z.gain_x[m] * old_x;
-    hy[m] -= z.gain_y[m] * old_y;
-  }
+  if constexpr (WANEWALL_VECTOR_BYTES == 64)
+    for (; m + Line::width <= z.n; m += Line::width)
+      z_layer_block<Line, Real, electric, late>(own_x, own_y, other_x, other_y, z, m);
+  for (; m + Half::width <= z.n; m += Half::width)
+    z_layer_block<Half, Real, electric, late>(own_x, own_y, other_x, other_y, z, m);
+  for (; m < z.n; ++m) z_layer_block<Single, Real, electric, late>(own_x, own_y, other_x, other_y, z, m);
 }

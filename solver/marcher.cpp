@@ -9,6 +9,7 @@
 
 #include "geometry/constants.hpp"
 #include "solver/flush_denormals.hpp"
+#include "solver/pinned_thread.hpp"
 
 namespace wanewall {
 namespace {
@@ -93,15 +94,14 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
             rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
       slabs_(deal_groups(rows_.i_begin, threads)),
       schedule_(schedule_for(problem)),
-      shape_(problem.tiles.value_or(TileShape{})),
+      choice_(schedule_ != Schedule::tiles ? TileChoice(TileShape{})
+              : problem.tiles
+                  ? TileChoice(*problem.tiles)
+                  : TileChoice(rows_, 6 * static_cast<std::size_t>(layout_.row) * sizeof(Real), threads)),
       tiles_(rows_, {problem.lattice.periodic[0], problem.lattice.periodic[1]}, threads) {
   for (Side side : all_sides)
     columns_[static_cast<std::size_t>(index_of(side))] = MoebiusColumns<Real>(problem_, side, layout_);
-  for (const std::size_t high : {0, 1}) {
-    const Side side = side_of(Axis::z, high != 0);
-    z_windows_[0][high] = z_window(problem_, side, true, layout_, sizeof(Real));
-    z_windows_[1][high] = z_window(problem_, side, false, layout_, sizeof(Real));
-  }
+  make_z_parts();
   if (problem_.plane_wave) surface_ = std::make_unique<TotalFieldSurface<Real>>(problem_, e_media_, h_media_);
   make_places();
   make_extras();
@@ -266,42 +266,59 @@ void Marcher<Real>::fill_task(int i, int j, bool electric, RowTask<Real>& t) {
   t.n_spans = static_cast<int>(media.spans.size());
 }
 
+/// The parts of rows inside z layers, ready but for what differs from row to row.
+template <class Real>
+void Marcher<Real>::make_z_parts() {
+  for (const bool electric : {true, false}) {
+    for (const bool high : {false, true}) {
+      const Side side = side_of(Axis::z, high);
+      const ZWindow window = z_window(problem_, side, electric, layout_, sizeof(Real));
+      if (window.length == 0) continue;
+      ZPart part;
+      part.length = window.length;
+      if (electric && kind(side) == FaceKind::moebius) {
+        part.moebius = columns(Axis::z, high).z_task();
+        part.moebius.ahead = column_memory_.z_values();
+        part.is_moebius_e = true;
+      } else {
+        const Stretch<Real>& stretch = (electric ? e_stretch_ : h_stretch_)[2];
+        part.layer.begin = window.begin;
+        part.layer.n = window.length;
+        part.layer.b = stretch.b.data() + window.begin;
+        part.layer.c = stretch.c.data() + window.begin;
+        part.layer.ahead = (electric ? e_memory_ : h_memory_).z_values();
+        part.kernel = electric                          ? kernels_.z_layer_e
+                      : kind(side) == FaceKind::moebius ? kernels_.z_layer_h_late
+                                                        : kernels_.z_layer_h;
+      }
+      z_parts_[electric ? 0 : 1].push_back(part);
+    }
+  }
+}
+
 template <class Real>
 void Marcher<Real>::add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j,
                                  bool electric) {
   const Real* gain = media.z_layer_gain.data();
   if (media.z_layer_gain.empty()) return;
-  const Stretch<Real>& stretch = (electric ? e_stretch_ : h_stretch_)[2];
-  auto& memory = electric ? e_memory_ : h_memory_;
-  Real* psi = memory.z(i, j);
+  Real* psi = (electric ? e_memory_ : h_memory_).z(i, j);
   Real* column_memory = column_memory_.z(i, j);
-  for (const bool high : {false, true}) {
-    const Side side = side_of(Axis::z, high);
-    const ZWindow& window = z_windows_[electric ? 0 : 1][high ? 1 : 0];
-    const int n = window.length;
-    if (n == 0) continue;
-    if (electric && kind(side) == FaceKind::moebius) {
-      ZMoebiusTask<Real> z = columns(Axis::z, high).z_task();
+  for (const ZPart& part : z_parts_[electric ? 0 : 1]) {
+    const int n = part.length;
+    if (part.is_moebius_e) {
+      ZMoebiusTask<Real> z = part.moebius;
       z.gain_x = gain;
       z.gain_y = gain + n;
       z.memory = column_memory;
-      z.ahead = column_memory_.z_values();
       kernels_.z_moebius_e(t, z);
       column_memory += 4 * n;
     } else {
-      ZLayerTask<Real> z;
-      z.begin = window.begin;
-      z.n = n;
-      z.b = stretch.b.data() + window.begin;
-      z.c = stretch.c.data() + window.begin;
+      ZLayerTask<Real> z = part.layer;
       z.gain_x = gain;
       z.gain_y = gain + n;
-      z.ahead = memory.z_values();
       z.psi_x = psi;
       z.psi_y = psi + n;
-      (electric                          ? kernels_.z_layer_e
-       : kind(side) == FaceKind::moebius ? kernels_.z_layer_h_late
-                                         : kernels_.z_layer_h)(t, z);
+      part.kernel(t, z);
       psi += 2 * n;
     }
     gain += 2 * n;
@@ -526,29 +543,35 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
   {
     const FlushDenormals flush;
     const int thread = omp_get_thread_num();
+    const PinnedThread pinned(thread, threads_, problem_.pin_threads);
     while (!failed && step_ < last) {
 #pragma omp single
       {
         // Blocks of equal length rather than long ones and a short rest.
-        const long left = last - step_, blocks = (left + shape_.steps - 1) / shape_.steps;
+        const TileShape& shape = choice_.next();
+        const long left = last - step_, blocks = (left + shape.steps - 1) / shape.steps;
         block_ = {step_ + 1, static_cast<int>((left + blocks - 1) / blocks)};
         dipoles_.prepare(block_);
         if (captures_) captures_->begin_block(block_.n);
         for (Recorder* recorder : recorders) recorder->before_block(block_);
-        if (schedule_ == Schedule::tiles) tiles_.prepare(shape_, block_.first, block_.n);
+        if (schedule_ == Schedule::tiles) tiles_.prepare(shape, block_.first, block_.n);
       }
       if (surface_) surface_->prepare(block_);
 #pragma omp barrier
+      const double start_s = omp_get_wtime();
       if (schedule_ == Schedule::tiles)
         tiles_.sweep(*this);
       else
         for (long s = block_.first; s < block_.end(); ++s) sweep(schedule_, rows_, slabs_, thread, s, *this);
 #pragma omp barrier
+      const double swept_s = omp_get_wtime() - start_s;
       for (Recorder* recorder : recorders) recorder->after_block_shared(thread, threads_);
 #pragma omp barrier
 #pragma omp single
       {
         step_ = block_.end() - 1;
+        // A block cut short tells nothing of its shape.
+        if (4 * block_.n >= 3 * choice_.next().steps) choice_.took(block_.n, swept_s);
         try {
           for (Recorder* recorder : recorders) recorder->after_block();
         } catch (...) {

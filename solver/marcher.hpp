@@ -16,6 +16,7 @@
 #include "solver/shell/moebius.hpp"
 #include "solver/shell/one_way.hpp"
 #include "solver/shell/stretch.hpp"
+#include "solver/tile_choice.hpp"
 
 namespace wanewall {
 
@@ -31,7 +32,10 @@ class Marcher : public RowWork {
   /// Advances from step() to step() + n, all recorders served. Starts the threads once.
   void advance(long n, const std::vector<Recorder*>& recorders);
   /// Steps that are made together when as many are asked for.
-  int block_steps() const { return shape_.steps; }
+  int block_steps() const { return choice_.next().steps; }
+  /// What is really used: fused where tiles were asked for and cannot be.
+  Schedule schedule() const { return schedule_; }
+  const TileChoice& tile_choice() const { return choice_; }
 
   long step() const { return step_; }
   Fields<Real>& fields() { return fields_; }
@@ -76,6 +80,16 @@ class Marcher : public RowWork {
   /// What a row has to do beside its curl and its layers.
   enum Extra : unsigned char { on_surface = 1, has_dipole = 2, is_captured = 4, has_mirror = 8 };
 
+  /// What a z layer does to a row.
+  struct ZPart {
+    int length = 0;
+    bool is_moebius_e = false;
+    ZMoebiusTask<Real> moebius;
+    ZLayerTask<Real> layer;
+    void (*kernel)(const RowTask<Real>&, const ZLayerTask<Real>&) = nullptr;
+  };
+
+  void make_z_parts();
   void make_places();
   void make_extras();
   void advance_e_group(const RowBlock& block, int slot, const Ahead& ahead);
@@ -101,7 +115,7 @@ class Marcher : public RowWork {
   std::array<Stretch<Real>, 3> e_stretch_, h_stretch_;
   std::array<MoebiusColumns<Real>, 6> columns_;        // by Side
   std::array<std::vector<int>, 2> column_slot_;        // of nodes in Moebius layers along x and y, else -1
-  std::array<std::array<ZWindow, 2>, 2> z_windows_{};  // [E, H][low, high]
+  std::array<std::vector<ZPart>, 2> z_parts_;          // [E, H], low side first
   LayerMemory<Real> e_memory_, h_memory_, column_memory_;
   OneWayWalls<Real> one_way_;
   std::unique_ptr<TotalFieldSurface<Real>> surface_;
@@ -116,7 +130,7 @@ class Marcher : public RowWork {
   RowGroups rows_;
   std::vector<int> slabs_;
   Schedule schedule_;
-  TileShape shape_;
+  TileChoice choice_;
   TileSweep tiles_;
   StepBlock block_;  ///< being made
   long step_ = 0;

@@ -138,6 +138,7 @@ struct Problem {
   Schedule schedule = Schedule::tiles;  ///< tiles become fused where x and y are both periodic
   std::optional<TileShape> tiles;       ///< none: found by trying while the run goes on
   int threads = 0;                      ///< 0: one per processor
+  bool pin_threads = true;              ///< to processors, when there are as many threads as processors
 
   const Face& face(Side s) const { return faces[static_cast<std::size_t>(index_of(s))]; }
   long last_step() const;  ///< the step at which `stop.at_s` is reached

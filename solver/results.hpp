@@ -135,6 +135,9 @@ struct RunResult {
   AuditRecord audit;
   int threads = 1;
   std::string vector_code;  ///< "AVX-512", "AVX2" or "baseline"
+  Schedule schedule = Schedule::tiles;  ///< what was used, see Problem::schedule
+  TileShape tiles;                      ///< of the tiled schedule
+  bool tiles_are_settled = true;        ///< false when the run ended before all shapes had been tried
   double build_seconds = 0.0;
   double march_seconds = 0.0;
 };

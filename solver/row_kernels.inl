@@ -236,8 +236,14 @@ void advance_h(const RowTask<Real>& t) {
 
 template <class Real>
 RowKernels<Real> make_kernels(std::string_view name) {
-  return {advance_e<Real>,      advance_h<Real>,       z_layer_e<Real>,   z_layer_h<Real>,
-          z_layer_h_late<Real>, moebius_columns<Real>, z_moebius_e<Real>, name};
+  return {advance_e<Real>,
+          advance_h<Real>,
+          z_layer<Real, true, false>,
+          z_layer<Real, false, false>,
+          z_layer<Real, false, true>,
+          moebius_columns<Real>,
+          z_moebius_e<Real>,
+          name};
 }
 
 }  // namespace WANEWALL_VECTOR_NAMESPACE

@@ -97,6 +97,9 @@ RunResult run_as(const Problem& problem, Sink& sink, Monitor& monitor) {
       break;
     }
   }
+  result.schedule = marcher.schedule();
+  result.tiles = marcher.tile_choice().next();
+  result.tiles_are_settled = marcher.tile_choice().is_settled();
   result.steps = marcher.step();
   result.march_seconds = seconds_since(march_start);
   result.points = points.finish();
@@ -127,7 +130,7 @@ Footprint footprint_as(const Problem& problem) {
     footprint.media += static_cast<double>(MediaRows<Real>(problem, layout, electric, threads).bytes());
   footprint.audit = AuditRecorder<Real>::bytes(problem);
   footprint.snapshots = SnapshotRecorder<Real>::bytes(problem.lattice, problem.recording.snapshots,
-                                                      problem.tiles.value_or(TileShape{}).steps);
+                                                      problem.tiles ? problem.tiles->steps : 16);
   const double rows = (layout.nx + 1.0) * (layout.ny + 1.0);
   const double steps = static_cast<double>(problem.last_step());
   footprint.other = 8.0 * rows + 8.0 * 6.0 * steps * static_cast<double>(problem.recording.points.size());

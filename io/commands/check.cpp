@@ -4,6 +4,8 @@
 #include <string>
 
 #include "io/commands.hpp"
+#include "io/memory_guard.hpp"
+#include "io/pace.hpp"
 #include "io/provenance.hpp"
 #include "io/scene.hpp"
 #include "io/scene/build_report.hpp"
@@ -14,6 +16,7 @@ namespace {
 struct CheckOptions {
   std::string scene_path;
   bool values = false;
+  bool time = false;
   bool schema = false;
   bool reference = false;
 };
@@ -28,8 +31,19 @@ ExitCode check(const CheckOptions& options) {
     return ExitCode::done;
   }
   const Scene scene = read_scene(options.scene_path);
-  std::cout << scene::build_report(scene, footprint_of(scene.problem),
-                                   {options.values, machine_memory_bytes()});
+  const Footprint footprint = footprint_of(scene.problem);
+  scene::ReportOptions report{options.values, machine_memory_bytes()};
+  if (options.time) {
+    constexpr double for_seconds = 8.0;
+    require_memory(footprint);
+    const Pace pace = measure_pace(scene.problem, for_seconds);
+    remember_pace(scene.problem, pace);
+    report.cells_per_second = pace.cells_per_second;
+    report.is_measured_now = true;
+  } else if (const std::optional<Pace> pace = known_pace(scene.problem)) {
+    report.cells_per_second = pace->cells_per_second;
+  }
+  std::cout << scene::build_report(scene, footprint, report);
   return ExitCode::done;
 }
 
@@ -41,6 +55,9 @@ void add_check_command(CLI::App& app, Action& action) {
   CLI::Option* path = command->add_option("scene", options->scene_path, "Scene file (YAML)");
   CLI::Option* values =
       command->add_flag("--values", options->values, "Also list every value used, defaults included");
+  command->add_flag("--time", options->time,
+                    "March the scene for a few seconds to say how long the run will take; nothing is written "
+                    "but a note of the rate in the user's cache folder");
   CLI::Option* schema = command->add_flag("--schema", options->schema,
                                           "Print the JSON Schema of the scene language, for editors");
   CLI::Option* reference =
@@ -48,7 +65,7 @@ void add_check_command(CLI::App& app, Action& action) {
   schema->excludes(path)->excludes(values)->excludes(reference);
   reference->excludes(path)->excludes(values);
   command->footer(
-      "Nothing is computed and nothing is written. A scene that cannot work ends with exit code 3.\n\n"
+      "Without --time nothing is computed and nothing is written. A scene that cannot work ends with exit code 3.\n\n"
       "Examples:\n"
       "  wanewall check drum.yaml\n"
       "  wanewall check drum.yaml --values\n"

@@ -11,6 +11,8 @@
 #include <vector>
 
 #include "io/commands.hpp"
+#include "io/memory_guard.hpp"
+#include "io/pace.hpp"
 #include "io/provenance.hpp"
 #include "io/record.hpp"
 #include "io/scene.hpp"
@@ -28,6 +30,8 @@ struct RunOptions {
   std::string record_path;
   int threads = 0;
   std::string schedule;
+  std::vector<int> tiles;
+  bool no_pin = false;
   bool xdmf = false;
   bool quiet = false;
   bool force = false;
@@ -74,23 +78,26 @@ void apply_overrides(Scene& scene, const RunOptions& options) {
     scene.problem.threads = options.threads;
     use_instead(scene, "run.threads", std::to_string(options.threads));
   }
+  if (!options.tiles.empty()) {
+    scene.problem.tiles = {options.tiles[0], options.tiles[1], options.tiles[2]};
+    use_instead(scene, "run.tiles",
+                fmt::format("[{}, {}, {}]", options.tiles[0], options.tiles[1], options.tiles[2]));
+  }
+  if (options.no_pin) {
+    scene.problem.pin_threads = false;
+    use_instead(scene, "run.pin", "false");
+  }
   if (!options.schedule.empty()) {
     scene.problem.schedule = schedule_named(options.schedule);
     use_instead(scene, "run.schedule", options.schedule);
   }
 }
 
-// An allocation on Linux succeeds long before the memory is there, and the run would be killed in the night.
-void require_memory(const Problem& problem, const std::string& run = "the run") {
-  const double needed = footprint_of(problem).total();
-  const double present = machine_memory_bytes();
-  if (present > 0.0 && needed > present) {
-    throw ProblemError(fmt::format(
-        "{} needs {} of memory, this machine has {}\n"
-        "  next: see what needs it with 'wanewall check', then make cells larger, the volume smaller, or "
-        "record less",
-        run, bytes_text(needed), bytes_text(present)));
-  }
+// Tiles that were fastest before, unless the scene or the command line names some.
+void use_known_tiles(Scene& scene) {
+  Problem& problem = scene.problem;
+  if (problem.tiles || problem.schedule != Schedule::tiles) return;
+  if (const std::optional<Pace> pace = known_pace(problem)) problem.tiles = pace->tiles;
 }
 
 std::string reason_text(const RunResult& result, const Problem& problem) {
@@ -143,8 +150,17 @@ std::string cost_text(const RunResult& result, const Problem& problem) {
     const double rate = problem.lattice.n_cells() * static_cast<double>(result.steps) / result.march_seconds;
     text += fmt::format(" at {:.3g} Gcell/s", rate * 1e-9);
   }
-  return text + fmt::format(" on {} thread{}, {} schedule, {} code\n", result.threads,
-                            result.threads == 1 ? "" : "s", name_of(problem.schedule), result.vector_code);
+  std::string schedule = fmt::format("{} schedule", name_of(result.schedule));
+  if (result.schedule == Schedule::tiles)
+    schedule = fmt::format("tiles of {} x {} rows and {} steps{}", result.tiles.x_rows, result.tiles.y_rows,
+                           result.tiles.steps,
+                           problem.tiles                ? ""
+                           : result.tiles_are_settled ? " (found by trying)"
+                                                        : " (the run ended before all shapes were tried)");
+  else if (problem.schedule == Schedule::tiles)
+    schedule += " (no tiles where x and y are both periodic)";
+  return text + fmt::format(" on {} thread{}, {}, {} code\n", result.threads, result.threads == 1 ? "" : "s",
+                            schedule, result.vector_code);
 }
 
 // Made from the file, not from what is still in memory, so that it is the same as `wanewall tables` would
@@ -168,7 +184,9 @@ struct Finished {
 };
 
 Finished compute(const Planned& planned, const RunOptions& options) {
-  const Scene& scene = planned.scene;
+  Scene scene = planned.scene;
+  const bool tiles_were_given = scene.problem.tiles.has_value();
+  use_known_tiles(scene);
   const std::string started = utc_now();
   const ProgressStyle style = options.quiet ? ProgressStyle::none : progress_style_of_output();
   ProgressMonitor monitor(style, scene.problem.stop.energy_below_db.has_value(), terminal_columns(), say);
@@ -178,13 +196,17 @@ Finished compute(const Planned& planned, const RunOptions& options) {
   finished.result = run(scene.problem, writer, monitor);
   const RunResult& result = finished.result;
   monitor.close();
+  // A run of a moment says little of the next.
+  if (!tiles_were_given && result.tiles_are_settled && result.march_seconds > 1.0)
+    remember_pace(scene.problem, {result.tiles, scene.problem.lattice.n_cells() *
+                                                    static_cast<double>(result.steps) / result.march_seconds});
 
   Provenance provenance = provenance_of_program();
   provenance.started_utc = started;
   provenance.ended_utc = utc_now();
   provenance.threads = result.threads;
   provenance.vector_code = result.vector_code;
-  provenance.schedule = name_of(scene.problem.schedule);
+  provenance.schedule = name_of(result.schedule);
   if (!planned.witness_of.empty()) {
     provenance.witness_of = planned.witness_of;
     provenance.witness_faces = planned.witness_faces;
@@ -254,15 +276,20 @@ ExitCode run_scene(const RunOptions& options) {
       return ExitCode::command_line;
     }
   }
+  if (!options.tiles.empty() && options.tiles[2] > most_tile_steps) {
+    warn(fmt::format("wanewall: --tiles: {} steps / at most {}\n  next: wanewall run --help\n", options.tiles[2],
+                     most_tile_steps));
+    return ExitCode::command_line;
+  }
   // All that can stop either run is found before the first begins.
   require_free_targets(first.record_path, options);
   if (options.witness)
     require_free_targets(witness_record_path(first.record_path, faces, first.scene.problem), options);
-  require_memory(first.scene.problem);
+  require_memory(footprint_of(first.scene.problem));
   std::optional<WitnessScene> witness;
   if (options.witness) {
     witness = witness_scene(first.scene, faces);
-    require_memory(witness->scene.problem, "the witness run");
+    require_memory(footprint_of(witness->scene.problem), "the witness run");
   }
 
   const StopSignals signals;
@@ -290,6 +317,13 @@ void add_run_command(CLI::App& app, Action& action) {
   command
       ->add_option("--schedule", options->schedule, "Order in which rows are visited; the result is the same")
       ->check(CLI::IsMember({"plain", "fused", "tiles"}));
+  command
+      ->add_option("--tiles", options->tiles,
+                   "Tile size of the tiled schedule: rows along x, rows along y, steps; default: the scene's, else "
+                   "what was fastest before, else found by trying")
+      ->expected(3)
+      ->check(CLI::Range(1, 100000));
+  command->add_flag("--no-pin", options->no_pin, "Let the system move threads between processors");
   command->add_flag("--xdmf", options->xdmf,
                     "Also write an XDMF file beside the record, for general viewers");
   command->add_flag("--force", options->force, "Replace an existing record, once the new one is whole");

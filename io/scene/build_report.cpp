@@ -43,7 +43,15 @@ double extent_m(const MeshLines& lines, int first_node, int last_node) {
   return lines.node_m(last_node) - lines.node_m(first_node);
 }
 
-std::string lattice_part(const Scene& scene) {
+std::string time_text(double updates, const ReportOptions& options) {
+  if (options.cells_per_second <= 0.0)
+    return "not known: no such scene has been run on this machine yet; 'wanewall check --time' measures";
+  return fmt::format("about {} at {:.3g} Gcell/s, measured {}",
+                     duration_text(updates / options.cells_per_second), options.cells_per_second * 1e-9,
+                     options.is_measured_now ? "just now" : "in the last run of this kind here");
+}
+
+std::string lattice_part(const Scene& scene, const ReportOptions& options) {
   const Problem& problem = scene.problem;
   const Lattice& lattice = problem.lattice;
   std::array<std::string, 3> extent, cell;
@@ -71,8 +79,8 @@ std::string lattice_part(const Scene& scene) {
                fmt::format("{}, Courant number {}", format_quantity(lattice.dt_s, Family::time, 6),
                            format_number(lattice.courant_number(), 4))},
               {"steps", end},
-              {"work",
-               fmt::format("{:.3g} cell updates, {} at 1 Gcell/s", updates, duration_text(updates * 1e-9))},
+              {"work", fmt::format("{:.3g} cell updates", updates)},
+              {"time", time_text(updates, options)},
               {"storage",
                problem.precision == Precision::single_precision ? "single precision" : "double precision"}});
 }
@@ -348,7 +356,7 @@ std::string build_report(const Scene& scene, const Footprint& footprint, const R
   std::string text = fmt::format("{}\n  {}, {} to {}\n", shown(scene.title), shown(scene.file),
                                  frequency_text(scene.band_lo_hz), frequency_text(scene.band_hi_hz));
   for (const std::string& part :
-       {lattice_part(scene), memory_part(scene.problem, footprint, options), media_part(scene),
+       {lattice_part(scene, options), memory_part(scene.problem, footprint, options), media_part(scene),
         illumination_part(scene), shell_part(scene), objects_part(scene), record_part(scene.problem)})
     text += "\n" + part;
   if (options.with_values) text += "\n" + values_part(scene);

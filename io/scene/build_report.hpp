@@ -11,6 +11,8 @@ namespace wanewall::scene {
 struct ReportOptions {
   bool with_values = false;    ///< also list every value used
   double machine_bytes = 0.0;  ///< memory of this machine; 0: not known
+  double cells_per_second = 0.0;  ///< measured for this kind of scene on this machine; 0: not known
+  bool is_measured_now = false;
 };
 
 std::string build_report(const Scene& scene, const Footprint& footprint, const ReportOptions& options);

@@ -25,6 +25,13 @@ void read_head(Cursor& root, Scene& scene) {
   Cursor run = root.block("run");
   scene.problem.threads = static_cast<int>(run.whole("threads"));
   scene.problem.schedule = schedule_named(run.word("schedule"));
+  scene.problem.pin_threads = run.yes("pin");
+  if (run.has("tiles")) {
+    const std::vector<double> tiles = run.quantities("tiles");
+    if (tiles[2] > most_tile_steps)
+      run.reject("tiles", fmt::format("at most {} steps", most_tile_steps), "take fewer steps");
+    scene.problem.tiles = {static_cast<int>(tiles[0]), static_cast<int>(tiles[1]), static_cast<int>(tiles[2])};
+  }
 }
 
 void read_media(Cursor& root, Scene& scene) {

@@ -94,12 +94,11 @@ ZWindow z_window(const Problem& problem, Side side, bool electric, const RowLayo
   const int nz = problem.lattice.cells(Axis::z), cells = face.cells();
   const int lowest = electric ? 1 : 0;
   ZWindow window{high ? nz - cells : lowest, cells, 0, cells};
-  if (face.kind == FaceKind::cfs_pml) return window;
   // Padding goes towards the inside, where the row goes on.
   const int block = moebius_block_bytes / static_cast<int>(bytes_per_value);
   const int length = (cells + block - 1) / block * block;
   const bool fits = high ? nz - length >= 0 : lowest + length <= layout.row;
-  if (!electric && !fits) return window;
+  if (!(electric && face.kind == FaceKind::moebius) && !fits) return window;
   window.length = length;
   if (high) {
     const int in_front = window.length - cells;

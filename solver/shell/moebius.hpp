@@ -47,8 +47,8 @@ struct ZWindow {
   int length = 0;
   int first = 0, last = 0;  ///< entries that belong to the layer
 };
-/// Windows of a z face's E nodes (or H half nodes); length 0 without a recursion of its own there. A Moebius
-/// layer's window is padded to whole blocks; one of H is not where the row is too short for that.
+/// Windows of a z face's E nodes (or H half nodes); length 0 without a recursion of its own there. They are
+/// padded to whole blocks; but only that of Moebius E where the row is too short for it.
 ZWindow z_window(const Problem& problem, Side side, bool electric, const RowLayout& layout,
                  std::size_t bytes_per_value);
 
