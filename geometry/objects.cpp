@@ -111,6 +111,22 @@ Interval z_interval(const HalfSpace& half, double x, double y, double tol) {
                     : slab(half.axis, half.at_m - tol, infinity, x, y);
 }
 
+bool is_block(const Box& box) {
+  return box.turn_rad == 0.0;
+}
+bool is_block(const Sphere&) {
+  return false;
+}
+bool is_block(const Cylinder&) {
+  return false;
+}
+bool is_block(const Layer&) {
+  return true;
+}
+bool is_block(const HalfSpace&) {
+  return true;
+}
+
 Bounds unbounded() {
   return {{-infinity, -infinity, -infinity}, {infinity, infinity, infinity}};
 }
@@ -172,6 +188,10 @@ Bounds bounds(const HalfSpace& half) {
 
 Interval z_interval(const Shape& shape, double x_m, double y_m, double tolerance_m) {
   return std::visit([&](const auto& s) { return z_interval(s, x_m, y_m, tolerance_m); }, shape);
+}
+
+bool is_block(const Shape& shape) {
+  return std::visit([](const auto& s) { return is_block(s); }, shape);
 }
 
 Bounds bounds_of(const Shape& shape) {

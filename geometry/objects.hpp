@@ -61,6 +61,10 @@ struct Interval {
 /// so that faces that lie on mesh lines belong to it. Ends may be +-infinity.
 Interval z_interval(const Shape& shape, double x_m, double y_m, double tolerance_m);
 
+/// True for boxes that are not turned, layers and half spaces: whether a line (x, y) meets one of these is
+/// decided by x and by y apart, and each line that meets it runs inside it over the same interval.
+bool is_block(const Shape& shape);
+
 /// Box with edges along the axes that holds the shape; ends may be +-infinity.
 struct Bounds {
   Vec3 lo_m{};

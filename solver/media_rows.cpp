@@ -38,6 +38,12 @@ SlabLoss slab_loss(const Problem& problem, Axis axis) {
   return loss;
 }
 
+/// Coefficients from index `begin` up to the next run's.
+struct CoefficientRun {
+  int begin = 0;
+  UpdateCoefficients value;
+};
+
 /// Update coefficients of whole rows before compression.
 class RowPainter {
  public:
@@ -46,28 +52,80 @@ class RowPainter {
         lattice_(problem.lattice),
         electric_(electric),
         painter_(problem.lattice, problem.media, problem.objects, problem.background),
-        loss_{slab_loss(problem, Axis::x), slab_loss(problem, Axis::y), slab_loss(problem, Axis::z)} {}
-
-  /// Fills decay and gain of one component; `out` has one entry per k = 0..nz.
-  void paint(int component, int i, int j, std::vector<UpdateCoefficients>& out) const {
-    const Component c =
-        electric_ ? electric(static_cast<Axis>(component)) : magnetic(static_cast<Axis>(component));
-    const auto nodes = static_cast<std::size_t>(lattice_.cells(Axis::z)) + 1;
-    out.assign(nodes, UpdateCoefficients{});
-    if (!moves(c, Axis::x, i) || !moves(c, Axis::y, j)) return;
-    thread_local std::vector<Paint> paint;
-    painter_.row(c, i, j, paint);
-    const double side_loss = loss(c, Axis::x, i) + loss(c, Axis::y, j);
-    const double vacuum = electric_ ? eps0_f_per_m : mu0_h_per_m;
-    for (std::size_t k = 0; k < paint.size(); ++k) {
-      if (paint[k].perfect || !moves(c, Axis::z, static_cast<int>(k))) continue;
-      const double rate =
-          paint[k].loss / (vacuum * paint[k].relative) + side_loss + loss(c, Axis::z, static_cast<int>(k));
-      out[k] = update_coefficients(paint[k].relative, rate, lattice_.dt_s);
+        loss_{slab_loss(problem, Axis::x), slab_loss(problem, Axis::y), slab_loss(problem, Axis::z)} {
+    for (std::size_t n = 0; n < 3; ++n) {
+      const Component c = component(n);
+      for (int k = 0; k <= lattice_.cells(Axis::z); ++k) {
+        ZPart part{k, moves(c, Axis::z, k), 0.0};
+        if (part.moves) part.loss_per_s = loss(c, Axis::z, k);
+        auto& parts = z_parts_[n];
+        if (parts.empty() || parts.back().moves != part.moves || parts.back().loss_per_s != part.loss_per_s)
+          parts.push_back(part);
+      }
     }
   }
 
+  /// Decay and gain of component n, as runs that cover k = 0..nz. Neighbours may have the same value.
+  void paint(std::size_t n, int i, int j, std::vector<CoefficientRun>& out) const {
+    const Component c = component(n);
+    out.clear();
+    if (!moves(c, Axis::x, i) || !moves(c, Axis::y, j)) {
+      out.push_back({0, {}});
+      return;
+    }
+    thread_local std::vector<PaintRun> paint;
+    painter_.runs(c, i, j, lattice_.stored(c, Axis::z), paint);
+    const double side_loss = loss(c, Axis::x, i) + loss(c, Axis::y, j);
+    const double vacuum = electric_ ? eps0_f_per_m : mu0_h_per_m;
+    auto at = paint.begin();
+    const auto& parts = z_parts_[n];
+    for (std::size_t p = 0; p < parts.size(); ++p) {
+      const ZPart& part = parts[p];
+      const int end = p + 1 < parts.size() ? parts[p + 1].begin : lattice_.cells(Axis::z) + 1;
+      if (!part.moves) {
+        out.push_back({part.begin, {}});
+        continue;
+      }
+      for (int k = part.begin; k < end; k = at->end) {
+        while (at->end <= k) ++at;
+        UpdateCoefficients value;
+        if (!at->paint.perfect) {
+          const double rate = at->paint.loss / (vacuum * at->paint.relative) + side_loss + part.loss_per_s;
+          value = update_coefficients(at->paint.relative, rate, lattice_.dt_s);
+        }
+        out.push_back({k, value});
+      }
+    }
+  }
+
+  /// True only when the rows (i, j) and (i2, j2) of all three components are equal.
+  bool surely_equal(int i, int j, int i2, int j2) const {
+    for (std::size_t n = 0; n < 3; ++n) {
+      const Component c = component(n);
+      const bool here = moves(c, Axis::x, i) && moves(c, Axis::y, j);
+      const bool there = moves(c, Axis::x, i2) && moves(c, Axis::y, j2);
+      if (here != there) return false;
+      if (!here) continue;
+      if (loss(c, Axis::x, i) + loss(c, Axis::y, j) != loss(c, Axis::x, i2) + loss(c, Axis::y, j2))
+        return false;
+      if (!painter_.surely_equal(c, i, j, i2, j2)) return false;
+    }
+    return true;
+  }
+
  private:
+  /// A stretch of the z axis with one rate of loss from its layers, from `begin` to the next part's.
+  struct ZPart {
+    int begin = 0;
+    bool moves = false;
+    double loss_per_s = 0.0;
+  };
+
+  Component component(std::size_t n) const {
+    const Axis along = all_axes[n];
+    return electric_ ? electric(along) : magnetic(along);
+  }
+
   double loss(Component c, Axis a, int index) const {
     const SlabLoss& along = loss_[static_cast<std::size_t>(index_of(a))];
     return (is_half(c, a) ? along.half : along.node)[static_cast<std::size_t>(index)];
@@ -90,6 +148,7 @@ class RowPainter {
   bool electric_;
   Painter painter_;
   std::array<SlabLoss, 3> loss_;
+  std::array<std::vector<ZPart>, 3> z_parts_;
 };
 
 template <class Real>
@@ -180,38 +239,53 @@ MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool
       rows_(static_cast<std::size_t>(layout.nx + 1) * static_cast<std::size_t>(layout.ny + 1)),
       pools_(static_cast<std::size_t>(threads)) {
   const RowPainter painter(problem, electric);
+  const int lattice_nodes = problem.lattice.cells(Axis::z) + 1;
   const ZWindow windows[2]{z_window(problem, Side::z_lo, electric, layout, sizeof(Real)),
                            z_window(problem, Side::z_hi, electric, layout, sizeof(Real))};
 #pragma omp parallel num_threads(threads)
   {
     auto& pool = pools_[static_cast<std::size_t>(omp_get_thread_num())];
     std::unordered_map<std::string, const RowMedia<Real>*> known;
-    std::vector<UpdateCoefficients> painted;
+    std::vector<CoefficientRun> painted;
+    std::array<std::vector<std::pair<int, Pair<Real>>>, 3> runs;  // first index and value; neighbours differ
     std::array<std::vector<Pair<Real>>, 3> values;
-    for (auto& component : values) component.resize(static_cast<std::size_t>(layout.row));
+    std::string key;
 #pragma omp for schedule(static)
     for (int i = 0; i <= layout.nx; ++i) {
       for (int j = 0; j <= layout.ny; ++j) {
-        std::string key;
+        const RowMedia<Real>*& row = rows_[static_cast<std::size_t>(i) * static_cast<std::size_t>(ny_ + 1) +
+                                           static_cast<std::size_t>(j)];
+        if (j > 0 && painter.surely_equal(i, j, i, j - 1)) {
+          row = *(&row - 1);
+          continue;
+        }
+        key.clear();
         for (std::size_t c = 0; c < 3; ++c) {
-          painter.paint(static_cast<int>(c), i, j, painted);
+          painter.paint(c, i, j, painted);
           // Tangential E on the low wall is held at zero after the update. What its coefficients say does not
           // matter, and the first line of a uniform row stays uniform when they follow their neighbour.
-          if (electric && c < 2 && painted.size() > 1 && wall_is_electric(problem, Side::z_lo))
-            painted[0] = painted[1];
-          std::fill(values[c].begin(), values[c].end(), Pair<Real>{0, 0});
-          for (std::size_t k = 0; k < painted.size(); ++k) {
-            values[c][k] = {static_cast<Real>(painted[k].decay), static_cast<Real>(painted[k].gain)};
-            if (k == 0 || !(values[c][k] == values[c][k - 1])) {  // run-length key
-              const auto at = static_cast<int>(k);
-              key.append(reinterpret_cast<const char*>(&at), sizeof at);
-              key.append(reinterpret_cast<const char*>(&values[c][k]), sizeof(Pair<Real>));
-            }
+          if (electric && c < 2 && painted.size() > 1 && painted[1].begin == 1 &&
+              wall_is_electric(problem, Side::z_lo))
+            painted[0].value = painted[1].value;
+          runs[c].clear();
+          for (const CoefficientRun& run : painted) {
+            const Pair<Real> value{static_cast<Real>(run.value.decay), static_cast<Real>(run.value.gain)};
+            if (!runs[c].empty() && runs[c].back().second == value) continue;
+            runs[c].emplace_back(run.begin, value);
+            key.append(reinterpret_cast<const char*>(&run.begin), sizeof run.begin);
+            key.append(reinterpret_cast<const char*>(&value), sizeof value);
           }
           key.push_back('|');
         }
         auto& slot = known[key];
         if (!slot) {
+          for (std::size_t c = 0; c < 3; ++c) {
+            values[c].assign(static_cast<std::size_t>(layout.row), Pair<Real>{0, 0});
+            for (std::size_t r = 0; r < runs[c].size(); ++r) {
+              const int end = r + 1 < runs[c].size() ? runs[c][r + 1].first : lattice_nodes;
+              std::fill(values[c].begin() + runs[c][r].first, values[c].begin() + end, runs[c][r].second);
+            }
+          }
           pool.push_back(compress(values));
           RowMedia<Real>& media = pool.back();
           for (const ZWindow& window : windows)
@@ -223,8 +297,7 @@ MediaRows<Real>::MediaRows(const Problem& problem, const RowLayout& layout, bool
               }
           slot = &media;
         }
-        rows_[static_cast<std::size_t>(i) * static_cast<std::size_t>(ny_ + 1) + static_cast<std::size_t>(j)] =
-            slot;
+        row = slot;
       }
     }
   }

@@ -2,6 +2,8 @@
 #include <catch2/catch.hpp>
 
 #include "geometry/painter.hpp"
+#include "tests/geometry/random_scene.hpp"
+#include "tests/geometry/slow_painter.hpp"
 
 using namespace wanewall;
 
@@ -141,4 +143,67 @@ TEST_CASE("The medium at a point", "[painter]") {
   CHECK(painter.medium_at({1, 1, 2}) == 1);
   CHECK(painter.medium_at({5, 5, 4.9}) == 2);
   CHECK(painter.medium_at({5, 5, 5.0}) == 2);
+}
+
+TEST_CASE("Rows are what their edges and faces are one by one, to the last bit", "[painter]") {
+  const bool curved = GENERATE(false, true);
+  long n_equal = 0, n_runs = 0, n_unlike = 0;
+  for (unsigned seed = 0; seed < 30; ++seed) {
+    test::RandomScene random(seed);
+    const Lattice lattice = random.lattice({9, 8, 70});
+    const std::vector<Medium> media = test::RandomScene::media();
+    const std::vector<Object> objects = random.objects(lattice, 1 + static_cast<int>(seed % 7), curved);
+    const Painter painter(lattice, media, objects, 1), other(lattice, media, {}, 0);
+    const test::SlowPainter slow{lattice, media, objects, 1};
+    for (Component c : all_components) {
+      const IndexRange all = lattice.stored(c, Axis::z), part{static_cast<int>(seed), 40};
+      std::vector<Paint> row, before, piece, unpainted;
+      std::vector<PaintRun> runs;
+      for (int i = 0; i < lattice.stored(c, Axis::x).end; ++i) {
+        for (int j = 0; j < lattice.stored(c, Axis::y).end; ++j) {
+          CAPTURE(seed, name_of(c), i, j);
+          before = row;
+          painter.row(c, i, j, row);
+          std::vector<Paint> wanted;
+          for (int k = 0; k < all.end; ++k) wanted.push_back(slow.at(c, {i, j, k}));
+          REQUIRE(row == wanted);
+          other.row(c, i, j, unpainted);  // what a thread remembers of one painter is not another's
+          REQUIRE(unpainted == std::vector<Paint>(wanted.size(), Paint{}));
+          painter.row(c, i, j, part, piece);
+          REQUIRE(
+              std::equal(piece.begin(), piece.end(), wanted.begin() + part.begin, wanted.begin() + part.end));
+          painter.runs(c, i, j, part, runs);
+          REQUIRE(runs.front().begin == part.begin);
+          REQUIRE(runs.back().end == part.end);
+          for (std::size_t r = 0; r < runs.size(); ++r) {
+            REQUIRE(runs[r].paint == wanted[static_cast<std::size_t>(runs[r].begin)]);
+            if (r == 0) continue;
+            REQUIRE(runs[r - 1].end == runs[r].begin);
+            REQUIRE(!(runs[r - 1].paint == runs[r].paint));
+          }
+          n_runs += static_cast<long>(runs.size());
+          if (j == 0) continue;
+          if (painter.surely_equal(c, i, j, i, j - 1)) {
+            REQUIRE(row == before);
+            ++n_equal;
+          } else if (row != before) {
+            ++n_unlike;
+          }
+        }
+      }
+    }
+  }
+  // The scenes have something in them, and not the same everywhere.
+  CHECK(n_runs > 25'000);
+  CHECK(n_equal > 1000);
+  CHECK(n_unlike > 1000);
+}
+
+TEST_CASE("Blocks are the shapes that every line crosses alike", "[shapes]") {
+  CHECK(is_block(Box{{0, 0, 0}, {2, 3, 4}, {0, 0, 1}, 0.0}));
+  CHECK_FALSE(is_block(Box{{0, 0, 0}, {2, 3, 4}, {0, 0, 1}, 0.1}));
+  CHECK(is_block(Layer{Axis::x, 1.0, 2.0}));
+  CHECK(is_block(HalfSpace{Axis::y, 1.0, true}));
+  CHECK_FALSE(is_block(Sphere{{0, 0, 0}, 1.0}));
+  CHECK_FALSE(is_block(Cylinder{{0, 0, 0}, {0, 0, 1}, 1.0}));
 }
