@@ -61,11 +61,6 @@ std::vector<int> make_column_slots(const Problem& problem, Axis axis) {
   return slots;
 }
 
-Schedule schedule_for(const Problem& problem) {
-  const bool untiled = problem.schedule == Schedule::tiles && !TileSweep::is_possible(problem.lattice);
-  return untiled ? Schedule::fused : problem.schedule;
-}
-
 const Problem& checked(const Problem& problem) {
   check_moebius_faces(problem);
   return problem;
@@ -93,15 +88,12 @@ Marcher<Real>::Marcher(const Problem& problem, int threads, VectorCode code)
       rows_{group_rows(problem, Axis::x), group_rows(problem, Axis::y),
             rows_per_band(static_cast<std::size_t>(layout_.row) * sizeof(Real))},
       slabs_(deal_groups(rows_.i_begin, threads)),
-      schedule_(schedule_for(problem)),
-      choice_(schedule_ != Schedule::tiles ? TileChoice(TileShape{})
-              : problem.tiles
-                  ? TileChoice(*problem.tiles)
-                  : TileChoice(rows_, 6 * static_cast<std::size_t>(layout_.row) * sizeof(Real), threads)),
+      choice_(TileShape{}),
       tiles_(rows_, {problem.lattice.periodic[0], problem.lattice.periodic[1]}, threads) {
   for (Side side : all_sides)
     columns_[static_cast<std::size_t>(index_of(side))] = MoebiusColumns<Real>(problem_, side, layout_);
   make_z_parts();
+  use(problem_.schedule, problem_.tiles);
   if (problem_.plane_wave) surface_ = std::make_unique<TotalFieldSurface<Real>>(problem_, e_media_, h_media_);
   make_places();
   make_extras();
@@ -145,6 +137,16 @@ const Real* Marcher<Real>::mirrored(Component c, int i, int j, Real* scratch) co
   const Real* row = fields_.row(c, i, j);
   for (std::ptrdiff_t k = 0; k < layout_.row; ++k) scratch[k] = -row[k];
   return scratch;
+}
+
+template <class Real>
+void Marcher<Real>::use(Schedule schedule, const std::optional<TileShape>& tiles) {
+  const bool untiled = schedule == Schedule::tiles && !TileSweep::is_possible(problem_.lattice);
+  schedule_ = untiled ? Schedule::fused : schedule;
+  if (schedule_ == Schedule::tiles && !tiles)
+    choice_ = TileChoice(rows_, 6 * static_cast<std::size_t>(layout_.row) * sizeof(Real), threads_);
+  else
+    choice_ = TileChoice(tiles.value_or(TileShape{}));
 }
 
 template <class Real>
@@ -509,11 +511,36 @@ void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given
   kernels_.advance_e(t);
   add_z_layers(t, media, i, j, true);
   if (z_walls_reach_beyond_) add_z_walls(t, media);
-  if ((extra & on_surface) && surface_->is_active(slot)) surface_->add_e(i, j, j_end, slot, t.own);
+  if ((extra & on_surface) && surface_->is_active(slot))
+    surface_->add(true, i, j, slot, surface_lines(true, i, j, j_end, slot), t.own);
   if (extra & has_dipole) dipoles_.add_e(i, j, slot, t.own);
   hold_z_walls(t);
   if (!one_way_.empty()) one_way_.finish_row(i, j, block_.first + slot, fields_);
   if (extra & is_captured) captures_->take(true, i, j, slot, fields_);
+}
+
+/// The rows that follow in the plane are sampled together with the first of them.
+template <class Real>
+const typename TotalFieldSurface<Real>::ZFaceLines& Marcher<Real>::surface_lines(bool electric, int i, int j,
+                                                                                  int j_end, int slot) {
+  struct Kept {
+    const void* owner = nullptr;
+    long step = -1;
+    bool electric = false;
+    int i = -1;
+    typename TotalFieldSurface<Real>::ZFaceLines lines;
+  };
+  thread_local Kept kept;
+  const bool fits = kept.owner == this && kept.step == block_.first + slot && kept.electric == electric &&
+                    kept.i == i && kept.lines.j_begin <= j && j < kept.lines.j_end;
+  if (!fits || j == kept.lines.j_begin) {
+    surface_->sample_z_faces(electric, i, j, std::max(j_end, j + 1), slot, kept.lines);
+    kept.owner = this;
+    kept.step = block_.first + slot;
+    kept.electric = electric;
+    kept.i = i;
+  }
+  return kept.lines;
 }
 
 template <class Real>
@@ -527,7 +554,8 @@ void Marcher<Real>::advance_h(const RowBlock& block, long step) {
       fill_task(i, j, false, t);
       kernels_.advance_h(t);
       add_z_layers(t, h_media_.row(i, j), i, j, false);
-      if ((extras[j] & on_surface) && surface_->is_active(slot)) surface_->add_h(i, j, block.j1, slot, t.own);
+      if ((extras[j] & on_surface) && surface_->is_active(slot))
+        surface_->add(false, i, j, slot, surface_lines(false, i, j, block.j1, slot), t.own);
       if (extras[j] & has_dipole) dipoles_.add_h(i, j, slot, t.own);
       if (extras[j] & is_captured) captures_->take(false, i, j, slot, fields_);
     }

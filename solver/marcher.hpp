@@ -38,6 +38,10 @@ class Marcher : public RowWork {
   const TileChoice& tile_choice() const { return choice_; }
 
   long step() const { return step_; }
+  /// Goes on from another step; what the fields are then is the caller's affair.
+  void set_step(long step) { step_ = step; }
+  /// Changes the schedule from the next advance() on, as Problem's schedule and tiles would have it.
+  void use(Schedule schedule, const std::optional<TileShape>& tiles);
   Fields<Real>& fields() { return fields_; }
   const Fields<Real>& fields() const { return fields_; }
   /// Everything that the next step depends on beside step(), in a fixed order: fields, layer memory, the past
@@ -94,6 +98,8 @@ class Marcher : public RowWork {
   void make_extras();
   void advance_e_group(const RowBlock& block, int slot, const Ahead& ahead);
   void advance_e_row(int i, int j, int j_end, int slot, const Given& given, const Ahead& ahead);
+  const typename TotalFieldSurface<Real>::ZFaceLines& surface_lines(bool electric, int i, int j, int j_end,
+                                                                    int slot);
   void mirror_h(int i, int j, RowTask<Real>& t);
   void solve_columns(Axis axis, bool high, int across, Real* difference, std::ptrdiff_t difference_step);
   const MoebiusColumns<Real>& columns(Axis axis, bool high) const {
@@ -129,7 +135,7 @@ class Marcher : public RowWork {
   std::vector<int> j_group_end_;
   RowGroups rows_;
   std::vector<int> slabs_;
-  Schedule schedule_;
+  Schedule schedule_ = Schedule::fused;
   TileChoice choice_;
   TileSweep tiles_;
   StepBlock block_;  ///< being made

@@ -21,12 +21,26 @@ using AddIncident = void (*)(Real* out, double factor, const double* gain, const
 template <class Real>
 AddIncident<Real> add_incident(VectorCode code);
 
-/// real[m] += sum over s of cosine[s] samples[s stride + m], imag[m] likewise with minus_sine, m < n; in
-/// double, in the order of s.
+/// Positions that lie together in the sums of a running DFT.
+inline constexpr std::size_t sum_group = 8;
+
+/// Samples of a field at positions, and the sums of their running DFT at several frequencies:
+///   real[f][m] += sum over s of cosine[f][s] sample[s][m], imag likewise with minus_sine; in double, in the order
+///   of s.
+/// Sums lie as [group of positions][frequency][real, imag][position in the group], so that they pass through the
+/// memory in one stream. Positions up to the end of the last group are read.
 template <class Real>
-using AddSamples = void (*)(const Real* samples, std::size_t stride, std::size_t n_samples,
-                            const double* cosine, const double* minus_sine, double* real, double* imag,
-                            std::size_t n);
+struct SampleBlock {
+  const Real* samples = nullptr;  ///< [n_samples][position], rows `sample_stride` apart
+  std::size_t sample_stride = 0, n_samples = 0;
+  const double* cosine = nullptr;      ///< [n_frequencies][n_samples]
+  const double* minus_sine = nullptr;  ///< likewise
+  std::size_t n_frequencies = 0;
+  double* sums = nullptr;
+  std::size_t n_groups = 0;
+};
+template <class Real>
+using AddSamples = void (*)(const SampleBlock<Real>& block);
 template <class Real>
 AddSamples<Real> add_samples(VectorCode code);
 

@@ -1,175 +1,139 @@
 // `wanewall speed`: how fast this machine advances fields, beside the loop that everybody writes first.
 #include <fmt/format.h>
 #include <omp.h>
+#include <yaml-cpp/yaml.h>
 
-#include <algorithm>
-#include <chrono>
-#include <cmath>
-#include <functional>
+#include <iostream>
 #include <memory>
 
-#include "geometry/constants.hpp"
+#include "io/atomic_file.hpp"
 #include "io/commands.hpp"
+#include "io/picture.hpp"
 #include "io/provenance.hpp"
-#include "solver/marcher.hpp"
-#include "solver/textbook_loop.hpp"
+#include "io/speed_bench.hpp"
+#include "io/terminal.hpp"
 
 namespace wanewall {
 namespace {
 
 struct Options {
-  int cells = 300;
-  int steps = 10;
-  int repeats = 5;
-  int threads = 0;
+  SpeedSetting setting;
+  std::vector<int> tiles;
+  std::vector<int> sizes;
+  std::string json_path, picture_path;
 };
 
-constexpr double cell_m = 1e-3;
-constexpr double courant = 0.99;
-
-Problem bare_cube(int cells, Schedule schedule, int threads) {
-  Problem problem;
-  problem.media.push_back({"vacuum", 1.0, 1.0, 0.0, 0.0, false, false});
-  for (auto& lines : problem.lattice.lines) lines = MeshLines::uniform(0.0, cell_m, cells);
-  problem.lattice.dt_s = courant * problem.lattice.courant_limit_s();
-  problem.schedule = schedule;
-  problem.threads = threads;
-  return problem;
+std::string shape_text(const TileShape& shape) {
+  return fmt::format("{} x {} rows and {} steps", shape.x_rows, shape.y_rows, shape.steps);
 }
 
-constexpr int shell_cells = 10;
+std::string result_text(const SpeedResult& r) {
+  const SpeedSetting& s = r.setting;
+  std::string text = fmt::format(
+      "processor: {}, {} threads, {} code, single precision unless said otherwise\n"
+      "cube of {} cells along each edge, all of them counted; {} rounds of {} steps in turn\n"
+      "full scene: Moebius shell of 10 cells on six faces, oblique plane wave, ball, block and rod, audit at 9 "
+      "frequencies\n"
+      "tiles: bare cube {}, full scene {}\n"
+      "checked: textbook loop and solver agree to {:.1e}, plain sweeps and tiles of the full scene bit for bit\n\n",
+      provenance_of_program().processor, s.threads, r.vector_code, s.cells, s.rounds, s.steps,
+      shape_text(r.bare_tiles), shape_text(r.scene_tiles), r.largest_difference);
+  text += "| memory    | median [GB/s] | least | most |\n| --------- | ------------: | ----: | ---: |\n";
+  for (const SpeedRow& row : r.memory)
+    text += fmt::format("| {:<9} | {:13.1f} | {:5.1f} | {:4.1f} |\n", row.name, row.median(), row.least(), row.most());
+  text += fmt::format("\none sweep a step through the memory, 48 bytes a cell, could do {:.3f} Gcell/s; the fused "
+                      "loop in cache does {:.3f}\n\n",
+                      r.one_sweep_limit(), r.in_cache.median());
+  text += fmt::format("| {:<35} | median [Gcell/s] | least | most  | bytes per cell-step | of one-sweep limit | of "
+                      "in-cache rate | over textbook |\n",
+                      "loop");
+  text += fmt::format(
+      "| {:-<35} | ---------------: | ----: | ----: | ------------------: | -----------------: | "
+      "---------------: | ------------: |\n",
+      "");
+  for (const SpeedRow& row : r.loops)
+    text += fmt::format("| {:<35} | {:16.3f} | {:.3f} | {:.3f} | {:>19} | {:17.0f}% | {:15.0f}% | {:13.2f} |\n",
+                        row.name, row.median(), row.least(), row.most(),
+                        row.bytes_per_cell_step > 0.0 ? fmt::format("{:.1f}", row.bytes_per_cell_step) : "",
+                        100.0 * row.median() / r.one_sweep_limit(), 100.0 * row.median() / r.in_cache.median(),
+                        row.median() / r.loops[0].median());
+  text += fmt::format(
+      "\nbytes per cell-step: what the fields must move through the memory at the least\n"
+      "tiles over fused, bare cube: {:.2f}; full scene over bare cube, tiles: {:.2f}\n",
+      r.loop("tiles").median() / r.loop("fused").median(), r.loop("full").median() / r.loop("tiles").median());
+  if (s.more)
+    text += fmt::format(
+        "{} threads over one, full scene: {:.2f}; double over single precision: {:.2f}; moebius over cfs_pml shell: "
+        "{:.2f}\n",
+        s.threads, r.loop("full").median() / r.loop("full_one_thread").median(),
+        r.loop("full_double").median() / r.loop("full").median(),
+        r.loop("moebius").median() / r.loop("cfs_pml").median());
+  text += fmt::format("memory of the full scene: {:.1f} bytes per cell (fields, layers, media)\n", r.bytes_per_cell);
+  return text;
+}
 
-/// The same clear cube inside a shell on six faces. What the layers' numbers are makes no difference to the
-/// time.
-Problem cube_in_shell(int clear_cells, FaceKind kind, int threads) {
-  Problem problem = bare_cube(clear_cells + 2 * shell_cells, Schedule::fused, threads);
-  Face face;
-  face.kind = kind;
-  if (kind == FaceKind::moebius) {
-    for (int j = 0; j < shell_cells; ++j) {
-      face.moebius.kappa.push_back(0.25);
-      face.moebius.sigma_s_per_m.push_back(2.0 * (j + 1) / (eta0_ohm * cell_m));
-      face.moebius.alpha_s_per_m.push_back(0.01 / (eta0_ohm * cell_m));
+void emit_row(YAML::Emitter& out, const SpeedRow& row) {
+  out << YAML::BeginMap << YAML::Key << "id" << YAML::Value << row.id << YAML::Key << "name" << YAML::Value << row.name
+      << YAML::Key << "median" << YAML::Value << row.median() << YAML::Key << "rounds" << YAML::Value << row.rates
+      << YAML::EndMap;
+}
+
+std::string json(const std::vector<SpeedResult>& results) {
+  YAML::Emitter out;
+  out << YAML::Flow << YAML::DoubleQuoted << YAML::BeginSeq;
+  for (const SpeedResult& r : results) {
+    const auto shape = [](const TileShape& t) { return std::vector<int>{t.x_rows, t.y_rows, t.steps}; };
+    out << YAML::BeginMap << YAML::Key << "program" << YAML::Value << version_text() << YAML::Key << "processor"
+        << YAML::Value << provenance_of_program().processor << YAML::Key << "threads" << YAML::Value
+        << r.setting.threads << YAML::Key << "vector_code" << YAML::Value << r.vector_code << YAML::Key << "cells"
+        << YAML::Value << r.setting.cells << YAML::Key << "steps" << YAML::Value << r.setting.steps << YAML::Key
+        << "bare_tiles" << YAML::Value << shape(r.bare_tiles) << YAML::Key << "scene_tiles" << YAML::Value
+        << shape(r.scene_tiles) << YAML::Key << "bytes_per_cell" << YAML::Value << r.bytes_per_cell;
+    out << YAML::Key << "memory_gb_per_s" << YAML::Value << YAML::BeginSeq;
+    for (const SpeedRow& row : r.memory) emit_row(out, row);
+    out << YAML::EndSeq << YAML::Key << "loops_gcell_per_s" << YAML::Value << YAML::BeginSeq;
+    emit_row(out, r.in_cache);
+    for (const SpeedRow& row : r.loops) emit_row(out, row);
+    out << YAML::EndSeq << YAML::EndMap;
+  }
+  out << YAML::EndSeq;
+  return std::string(out.c_str()) + "\n";
+}
+
+LineChart chart_of(const std::vector<SpeedResult>& results) {
+  LineChart chart;
+  chart.title = fmt::format("{}, {} threads", provenance_of_program().processor, results[0].setting.threads);
+  chart.x_label = "cells along an edge";
+  chart.y_label = "rate [Gcell/s]";
+  double most = 0.0;
+  for (const SpeedRow& row : results[0].loops) {
+    Curve curve{row.name, {}, {}};
+    for (const SpeedResult& result : results) {
+      curve.x.push_back(result.setting.cells);
+      curve.y.push_back(result.loop(row.id).median());
+      most = std::max(most, curve.y.back());
     }
-  } else {
-    PolynomialGrading grading;
-    grading.sigma_max_s_per_m = sigma_max_rule(grading.order, cell_m, 1.0);
-    grading.alpha_max_s_per_m = 0.01;
-    face.layer = polynomial_layer(grading, shell_cells);
+    chart.curves.push_back(std::move(curve));
   }
-  problem.faces.fill(face);
-  problem.lattice.shell_cells.fill(shell_cells);
-  return problem;
+  chart.y_range = {0.0, 1.15 * most};
+  return chart;
 }
 
-/// The cube in its Moebius shell, crossed by an oblique plane wave.
-Problem full_scene(int clear_cells, int threads) {
-  constexpr int inset = 6;
-  Problem problem = cube_in_shell(clear_cells, FaceKind::moebius, threads);
-  PlaneWave wave;
-  wave.theta_rad = 37.3 * pi / 180.0;
-  wave.phi_rad = 71.9 * pi / 180.0;
-  wave.e_angle_rad = 0.25 * pi;
-  wave.pulse = modulated_gaussian_for_band(c0_m_per_s / (40.0 * cell_m), c0_m_per_s / (12.0 * cell_m));
-  for (std::size_t a = 0; a < 3; ++a) {
-    wave.box_lo[a] = shell_cells + inset;
-    wave.box_hi[a] = shell_cells + clear_cells - inset;
+ExitCode measure(Options options) {
+  SpeedSetting& setting = options.setting;
+  if (setting.threads == 0) setting.threads = omp_get_num_procs();
+  if (!options.tiles.empty()) setting.tiles = TileShape{options.tiles[0], options.tiles[1], options.tiles[2]};
+  std::vector<int> sizes = options.sizes;
+  if (sizes.empty() && options.picture_path.empty()) sizes = {setting.cells};
+  if (sizes.empty()) sizes = {48, 64, 96, 128, 160, 200, 240, 320, 400, 480};
+  std::vector<SpeedResult> results;
+  for (const int cells : sizes) {
+    setting.cells = cells;
+    results.push_back(measure_speed(setting));
+    std::cout << (results.size() > 1 ? "\n" : "") << result_text(results.back()) << std::flush;
   }
-  problem.plane_wave = wave;
-  return problem;
-}
-
-/// Both must compute the same thing before either is timed.
-double largest_difference(int threads) {
-  constexpr int n = 32, steps = 40;
-  TextbookLoop loop(n, static_cast<float>(courant / std::sqrt(3.0)), threads);
-  Marcher<float> marcher(bare_cube(n, Schedule::fused, threads), threads);
-  for (int i = 8; i < 24; ++i)
-    for (int k = 1; k < n; ++k) {
-      const auto value = static_cast<float>(std::sin(0.37 * i) * std::cos(0.21 * k));
-      loop.at(1, i, 11, k) = value;
-      marcher.fields().row(Component::ey, i, 11)[k] = value;
-    }
-  loop.advance(steps);
-  marcher.advance(steps, {});
-  double worst = 0.0;
-  for (Component c : all_components)
-    for (int i = 0; i < n; ++i)
-      for (int j = 0; j < n; ++j)
-        for (int k = 0; k < n; ++k)
-          worst = std::max(worst, std::abs(static_cast<double>(loop.at(index_of(c), i, j, k)) -
-                                           static_cast<double>(marcher.fields().row(c, i, j)[k])));
-  return worst;
-}
-
-struct Contender {
-  std::string name;
-  double cells;
-  std::function<void(int)> advance;
-  std::vector<double> rates{};  // Gcell/s, one per repeat
-
-  double median() const {
-    std::vector<double> sorted = rates;
-    std::sort(sorted.begin(), sorted.end());
-    return sorted[sorted.size() / 2];
-  }
-};
-
-ExitCode measure(const Options& options) {
-  const int threads = options.threads > 0 ? options.threads : omp_get_num_procs();
-  const double difference = largest_difference(threads);
-  if (!(difference < 1e-5))
-    throw std::logic_error(fmt::format("the textbook loop and the solver differ by {:.2e}", difference));
-  const auto n = static_cast<double>(options.cells);
-  TextbookLoop loop(options.cells, static_cast<float>(courant / std::sqrt(3.0)), threads);
-  Marcher<float> plain(bare_cube(options.cells, Schedule::plain, threads), threads);
-  Marcher<float> fused(bare_cube(options.cells, Schedule::fused, threads), threads);
-  const Problem scene = full_scene(options.cells, threads);
-  Marcher<float> full(scene, threads);
-  Marcher<float> cfs(cube_in_shell(options.cells, FaceKind::cfs_pml, threads), threads);
-  Marcher<float> moebius(cube_in_shell(options.cells, FaceKind::moebius, threads), threads);
-  std::vector<Contender> contenders{
-      {"textbook loop", n * n * n, [&](int steps) { loop.advance(steps); }},
-      {"plain sweeps, bare cube", n * n * n, [&](int steps) { plain.advance(steps, {}); }},
-      {"fused sweep, bare cube", n * n * n, [&](int steps) { fused.advance(steps, {}); }},
-      {"fused, in a cfs_pml shell", scene.lattice.n_cells(), [&](int steps) { cfs.advance(steps, {}); }},
-      {"fused, in a moebius shell", scene.lattice.n_cells(), [&](int steps) { moebius.advance(steps, {}); }},
-      {"fused sweep, full scene", scene.lattice.n_cells(), [&](int steps) { full.advance(steps, {}); }}};
-  // The first round warms up; then all take turns, so that a machine that slows down slows all.
-  for (int repeat = 0; repeat <= options.repeats; ++repeat) {
-    for (Contender& contender : contenders) {
-      const auto start = std::chrono::steady_clock::now();
-      contender.advance(options.steps);
-      const double seconds = std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
-      if (repeat > 0) contender.rates.push_back(contender.cells * options.steps / seconds * 1e-9);
-    }
-  }
-  const double held = static_cast<double>(full.field_bytes() + full.layer_bytes() + full.media_bytes());
-  fmt::print("processor: {}, {} threads, {} code, single precision, Courant number {}\n",
-             provenance_of_program().processor, threads, full.vector_code(), courant);
-  fmt::print(
-      "cube of {} cells; in a shell: the cube as clear volume, {} layer cells on six faces, all {} cells "
-      "counted; full scene: moebius shell and an oblique plane wave\n",
-      options.cells, shell_cells, scene.lattice.n_cells());
-  fmt::print("{} rounds of {} steps in turn; textbook loop and solver agree to {:.1e}\n\n", options.repeats,
-             options.steps, difference);
-  fmt::print("| {:<25} | median [Gcell/s] | least [Gcell/s] | most [Gcell/s] | over the textbook loop |\n",
-             "what");
-  fmt::print("| {:-<25} | ---------------: | --------------: | -------------: | ---------------------: |\n",
-             "");
-  for (const Contender& contender : contenders) {
-    const auto [least, most] = std::minmax_element(contender.rates.begin(), contender.rates.end());
-    fmt::print("| {:<25} | {:16.3f} | {:15.3f} | {:14.3f} | {:22.2f} |\n", contender.name, contender.median(),
-               *least, *most, contender.median() / contenders[0].median());
-  }
-  fmt::print("\nmoebius shell over cfs_pml shell: {:.3f}\n", contenders[4].median() / contenders[3].median());
-  const auto layer_words = [&](const Marcher<float>& m) {
-    return static_cast<double>(m.layer_bytes()) / (scene.lattice.n_cells() - n * n * n);
-  };
-  fmt::print("layer memory per shell cell: cfs_pml {:.1f}, moebius {:.1f} bytes\n", layer_words(cfs),
-             layer_words(moebius));
-  fmt::print("memory of the full scene: {:.1f} bytes per clear cell (fields, layers, media)\n",
-             held / (n * n * n));
+  if (!options.json_path.empty()) write_atomically(options.json_path, json(results));
+  if (!options.picture_path.empty()) draw_svg(chart_of(results), options.picture_path);
   return ExitCode::done;
 }
 
@@ -177,20 +141,36 @@ ExitCode measure(const Options& options) {
 
 void add_speed_command(CLI::App& app, Action& action) {
   auto options = std::make_shared<Options>();
+  SpeedSetting& setting = options->setting;
+  setting.threads = 0;
   CLI::App* command =
       app.add_subcommand("speed", "Measure this machine against the loop that everybody writes first");
-  command->add_option("--cells", options->cells, "Cells along each edge of the cube")
-      ->check(CLI::Range(16, 1024))
+  const CLI::Range sizes(48, 1024);
+  command->add_option("--cells", setting.cells, "Cells along each edge of the cube, its shell included")
+      ->check(sizes)
       ->capture_default_str();
-  command->add_option("--steps", options->steps, "Steps in a round")
+  command->add_option("--sizes", options->sizes, "Several cubes, one after the other")->check(sizes);
+  command->add_option("--steps", setting.steps, "Steps in a round")
       ->check(CLI::Range(1, 10000))
       ->capture_default_str();
-  command->add_option("--repeats", options->repeats, "Rounds that count")
+  command->add_option("--rounds", setting.rounds, "Rounds that count")
       ->check(CLI::Range(1, 100))
       ->capture_default_str();
-  command->add_option("--threads", options->threads, "Threads; 0: one per processor")
-      ->check(CLI::Range(0, 1024));
-  command->footer("Example:\n  wanewall speed --cells 200 --repeats 3");
+  command->add_option("--threads", setting.threads, "Threads; 0: one per processor")->check(CLI::Range(0, 1024));
+  command
+      ->add_option("--tiles", options->tiles, "Rows along x, rows along y, steps; default: found by trying")
+      ->expected(3)
+      ->check(CLI::Range(1, 100000));
+  command->add_flag("--more", setting.more, "Also one thread, double precision, and shells without a scene");
+  command->add_option("--json", options->json_path, "Also write every round's figures into this file");
+  command->add_option("--picture", options->picture_path,
+                      "Draw the rates over the size of the cube, as SVG; cubes from 48 to 480 unless --sizes says "
+                      "otherwise");
+  command->footer(
+      "Needs about 220 bytes of memory per cell, 14 GB at 400 cells; with --more 380 bytes.\n\n"
+      "Examples:\n"
+      "  wanewall speed --cells 200 --rounds 3\n"
+      "  wanewall speed --picture rates.svg --json rates.json");
   command->callback([options, &action] { action = [options] { return measure(*options); }; });
 }
 

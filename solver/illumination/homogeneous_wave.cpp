@@ -44,16 +44,12 @@ class HomogeneousWave : public IncidentWave {
   using Tables = std::array<Table, 6>;  // by component
 
   void line(int slot, Component c, Index3 at, Axis along, int count, double* out) const;
-  double along_m(Component c, Index3 at) const {
-    double p = 0.0;
-    const Vec3 r = lattice_.position_m(c, at);
-    for (std::size_t a = 0; a < 3; ++a) p += direction_[a] * (r[a] - origin_m_[a]);
-    return p;
-  }
-
   Lattice lattice_;
   double dt_s_;
-  Vec3 direction_{}, origin_m_{};
+  Vec3 direction_{};
+  // Positions in a component's table: origin_ + sum over the axes of index * step_.
+  std::array<double, 6> origin_{};
+  Vec3 step_{};
   double table_origin_m_ = 0.0, table_step_m_ = 0.0;
   std::size_t table_size_ = 0, period_ = 0;
   SampleTable sample_ = sample_table(best_vector_code());
@@ -69,7 +65,7 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
     : lattice_(lattice), dt_s_(lattice.dt_s), direction_(propagation_of(wave)) {
   const double index = std::sqrt(medium.permittivity_rel * medium.permeability_rel);
   const double speed = c0_m_per_s / index;
-  Vec3 cell{};
+  Vec3 cell{}, corner_m{};
   double path_m = 0.0;
   for (Axis axis : all_axes) {
     const auto a = static_cast<std::size_t>(index_of(axis));
@@ -79,7 +75,7 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
     cell[a] = lattice.along(axis).cell_m(0);
     const double lo = lattice.along(axis).node_m(wave.box_lo[a]),
                  hi = lattice.along(axis).node_m(wave.box_hi[a]);
-    origin_m_[a] = direction_[a] >= 0.0 ? lo : hi;  // the corner that the wave meets first
+    corner_m[a] = direction_[a] >= 0.0 ? lo : hi;  // the corner that the wave meets first
     path_m += std::abs(direction_[a]) * (hi - lo + cell[a]);
   }
   const double smallest = *std::min_element(cell.begin(), cell.end());
@@ -95,6 +91,13 @@ HomogeneousWave::HomogeneousWave(const Lattice& lattice, const PlaneWave& wave, 
   table_origin_m_ = -2.0 * largest - (taps + 2) * table_step_m_;
   table_size_ = static_cast<std::size_t>(std::ceil((path_m + 4.0 * largest) / table_step_m_)) + 3 * taps;
   table_size_ = std::min(table_size_, period_);
+  for (std::size_t a = 0; a < 3; ++a) step_[a] = direction_[a] * cell[a] / table_step_m_;
+  for (Component c : all_components) {
+    const Vec3 first_m = lattice.position_m(c, {0, 0, 0});
+    double along_m = 0.0;
+    for (std::size_t a = 0; a < 3; ++a) along_m += direction_[a] * (first_m[a] - corner_m[a]);
+    origin_[static_cast<std::size_t>(index_of(c))] = (along_m - table_origin_m_) / table_step_m_;
+  }
 
   heard_above_ = quiet_level * wave.peak_v_per_m;
   const Vec3 e_hat = e_direction_of(wave);
@@ -198,8 +201,9 @@ void HomogeneousWave::line(int slot, Component c, Index3 at, Axis along, int cou
   const auto a = static_cast<std::size_t>(index_of(along));
   const int begin = at[a];
   at[a] = 0;
-  const double origin = (along_m(c, at) - table_origin_m_) / table_step_m_;
-  const double step = direction_[a] * lattice_.along(along).cell_m(0) / table_step_m_;
+  const double step = step_[a];
+  const double origin =
+      origin_[static_cast<std::size_t>(index_of(c))] + (at[0] * step_[0] + at[1] * step_[1] + at[2] * step_[2]);
   const auto position = [&](int m) { return origin + (begin + m) * step; };
   // The first and the last point that hear the wave lie where the line meets the ends of the pulse.
   int first = 0, last = count;

@@ -1,7 +1,6 @@
 #include "solver/illumination/total_field_surface.hpp"
 
 #include <algorithm>
-#include <atomic>
 #include <cmath>
 
 #include "geometry/constants.hpp"
@@ -37,8 +36,6 @@ template <class Real>
 TotalFieldSurface<Real>::TotalFieldSurface(const Problem& problem, const MediaRows<Real>& e_media,
                                            const MediaRows<Real>& h_media)
     : lattice_(problem.lattice), plane_wave_(*problem.plane_wave) {
-  static std::atomic<long> n_surfaces{0};
-  id_ = ++n_surfaces;
   const PlaneWave& wave = plane_wave_;
   const int nz = lattice_.cells(Axis::z);
   const Vec3 direction = propagation_of(wave);
@@ -66,8 +63,24 @@ TotalFieldSurface<Real>::TotalFieldSurface(const Problem& problem, const MediaRo
   }
 
   for (const bool electric : {true, false}) {
-    for (const Term& term : make_terms(electric))
-      (term.normal == Axis::z ? z_terms_ : side_terms_)[electric ? 0 : 1].push_back(term);
+    std::vector<char>& has_side_terms = has_side_terms_[electric ? 0 : 1];
+    has_side_terms.assign(static_cast<std::size_t>(lattice_.cells(Axis::x) + 1) *
+                              static_cast<std::size_t>(lattice_.cells(Axis::y) + 1),
+                          0);
+    for (Term& term : make_terms(electric)) {
+      if (term.normal == Axis::z) {
+        const auto component = static_cast<std::size_t>(index_of(axis_of(term.corrected)));
+        term.z_factor = term.factor_per_m *
+                        (electric ? e_gain_ : h_gain_)[component][static_cast<std::size_t>(term.target)];
+        z_terms_[electric ? 0 : 1].push_back(term);
+        continue;
+      }
+      side_terms_[electric ? 0 : 1].push_back(term);
+      for (int i = term.x.begin; i < term.x.end; ++i)
+        for (int j = term.y.begin; j < term.y.end; ++j)
+          has_side_terms[static_cast<std::size_t>(i) * static_cast<std::size_t>(lattice_.cells(Axis::y) + 1) +
+                         static_cast<std::size_t>(j)] = 1;
+    }
   }
 
   // Every row that the surface touches must be like that column.
@@ -194,28 +207,47 @@ std::vector<typename TotalFieldSurface<Real>::Term> TotalFieldSurface<Real>::mak
 }
 
 template <class Real>
-void TotalFieldSurface<Real>::add(int i, int j, int j_end, int slot, Real* const own[3],
-                                  bool electric) const {
-  thread_local std::vector<double> incident;
-  const std::size_t field = electric ? 0 : 1;
-  const auto& all_gains = electric ? e_gain_ : h_gain_;
-  for (const Term& term : side_terms_[field]) {
-    if (!term.x.contains(i) || !term.y.contains(j)) continue;
-    Index3 from{i, j, term.z.begin};
-    from[at(term.normal)] = term.source_index;
-    incident.resize(static_cast<std::size_t>(term.z.size()));
-    wave_->row(slot, term.source, from[0], from[1], from[2], term.z.size(), incident.data());
-    const int component = index_of(axis_of(term.corrected));
-    const double* gain = all_gains[static_cast<std::size_t>(component)].data() + term.z.begin;
-    Real* out = own[component] + term.z.begin;
-    add_(out, term.factor_per_m, gain, incident.data(), term.z.size());
+void TotalFieldSurface<Real>::sample_z_faces(bool electric, int i, int j_begin, int j_end, int slot,
+                                             ZFaceLines& lines) const {
+  lines.j_begin = j_begin;
+  lines.j_end = j_end;
+  const std::vector<Term>& terms = z_terms_[electric ? 0 : 1];
+  for (std::size_t t = 0; t < terms.size(); ++t) {
+    const Term& term = terms[t];
+    const int begin = std::max(j_begin, term.y.begin), end = std::min(j_end, term.y.end);
+    lines.values[t].clear();
+    if (!term.x.contains(i) || begin >= end) continue;
+    lines.values[t].resize(static_cast<std::size_t>(j_end - j_begin), 0.0);
+    wave_->line_y(slot, term.source, i, begin, term.source_index, end - begin,
+                  lines.values[t].data() + (begin - j_begin));
   }
-  for (const Term& term : z_terms_[field]) {
-    if (!term.x.contains(i) || !term.y.contains(j)) continue;
-    const int component = index_of(axis_of(term.corrected));
-    const double gain = all_gains[static_cast<std::size_t>(component)][static_cast<std::size_t>(term.target)];
-    const double value = z_face_value(term, i, j, j_end, slot, electric);
-    own[component][term.target] += static_cast<Real>(term.factor_per_m * gain * value);
+}
+
+template <class Real>
+void TotalFieldSurface<Real>::add(bool electric, int i, int j, int slot, const ZFaceLines& lines,
+                                  Real* const own[3]) const {
+  const std::size_t field = electric ? 0 : 1;
+  if (has_side_terms_[field][static_cast<std::size_t>(i) * static_cast<std::size_t>(lattice_.cells(Axis::y) + 1) +
+                             static_cast<std::size_t>(j)]) {
+    thread_local std::vector<double> incident;
+    for (const Term& term : side_terms_[field]) {
+      if (!term.x.contains(i) || !term.y.contains(j)) continue;
+      Index3 from{i, j, term.z.begin};
+      from[at(term.normal)] = term.source_index;
+      incident.resize(static_cast<std::size_t>(term.z.size()));
+      wave_->row(slot, term.source, from[0], from[1], from[2], term.z.size(), incident.data());
+      const int component = index_of(axis_of(term.corrected));
+      const double* gain =
+          (electric ? e_gain_ : h_gain_)[static_cast<std::size_t>(component)].data() + term.z.begin;
+      add_(own[component] + term.z.begin, term.factor_per_m, gain, incident.data(), term.z.size());
+    }
+  }
+  const std::vector<Term>& terms = z_terms_[field];
+  for (std::size_t t = 0; t < terms.size(); ++t) {
+    const Term& term = terms[t];
+    if (lines.values[t].empty() || !term.y.contains(j)) continue;
+    own[index_of(axis_of(term.corrected))][term.target] +=
+        static_cast<Real>(term.z_factor * lines.values[t][static_cast<std::size_t>(j - lines.j_begin)]);
   }
 }
 
@@ -232,30 +264,6 @@ void TotalFieldSurface<Real>::prepare(const StepBlock& block) {
 #pragma omp for schedule(dynamic, 1) nowait
   for (int piece = 0; piece < parts * block_.n; ++piece)
     if (is_active(piece / parts)) wave_->prepare(block_.first + piece / parts, piece / parts, piece % parts);
-}
-
-template <class Real>
-double TotalFieldSurface<Real>::z_face_value(const Term& term, int i, int j, int j_end, int slot,
-                                             bool electric) const {
-  struct Line {
-    long owner = -1, step = -1;
-    int i = -1, j_begin = 0, j_end = 0;
-    std::vector<double> values;
-  };
-  // [rows of E or H][face][source along x or y]
-  thread_local std::array<std::array<std::array<Line, 2>, 2>, 2> lines;
-  Line& line = lines[electric ? 0 : 1][term.high ? 1 : 0][axis_of(term.source) == Axis::x ? 0 : 1];
-  const long step = block_.first + slot;
-  if (line.owner != id_ || line.step != step || line.i != i || j < line.j_begin || j >= line.j_end) {
-    line.owner = id_;
-    line.step = step;
-    line.i = i;
-    line.j_begin = j;
-    line.j_end = std::min(std::max(j_end, j + 1), term.y.end);
-    line.values.resize(static_cast<std::size_t>(line.j_end - j));
-    wave_->line_y(slot, term.source, i, j, term.source_index, line.j_end - j, line.values.data());
-  }
-  return line.values[static_cast<std::size_t>(j - line.j_begin)];
 }
 
 template class TotalFieldSurface<float>;

@@ -30,14 +30,16 @@ class TotalFieldSurface {
   /// True when row (i, j) has terms to add to E (or H) at all.
   bool touches_e(int i, int j) const { return touches(i, j, true); }
   bool touches_h(int i, int j) const { return touches(i, j, false); }
+  /// Incident values on the faces across z, for rows j_begin .. j_end - 1 of one plane at one step.
+  struct ZFaceLines {
+    int j_begin = 0, j_end = 0;
+    std::array<std::vector<double>, 4> values;  // by term; empty where the term has none there
+  };
+  void sample_z_faces(bool electric, int i, int j_begin, int j_end, int slot, ZFaceLines& lines) const;
+
   /// Adds the surface terms of row (i, j) at the block's step `slot`; `own` are the three components' rows at
-  /// k = 0. Rows j .. j_end - 1 of the plane follow in the same thread; only a hint.
-  void add_e(int i, int j, int j_end, int slot, Real* const own[3]) const {
-    add(i, j, j_end, slot, own, true);
-  }
-  void add_h(int i, int j, int j_end, int slot, Real* const own[3]) const {
-    add(i, j, j_end, slot, own, false);
-  }
+  /// k = 0, `lines` those of the row's plane and step.
+  void add(bool electric, int i, int j, int slot, const ZFaceLines& lines, Real* const own[3]) const;
 
  private:
   /// One face's correction of one tangential component: field += factor gain(k) incident(source).
@@ -48,22 +50,19 @@ class TotalFieldSurface {
     int target = 0;        ///< index of the corrected component along the normal
     int source_index = 0;  ///< index of the incident component along the normal
     double factor_per_m = 0.0;
+    double z_factor = 0.0;  ///< of faces across z: with the gain at the target
     IndexRange x, y, z;  ///< where the corrected component exists on the face; one index along the normal
   };
   std::vector<Term> make_terms(bool electric) const;
   bool touches(int i, int j, bool electric) const;
-  void add(int i, int j, int j_end, int slot, Real* const own[3], bool electric) const;
   /// Index range of the surface's components along an axis.
   IndexRange extent(Component c, Axis a) const;
-  /// Incident value on a z face at (i, j). Rows of one plane come one after another, so the values for those
-  /// that follow are sampled together and kept by the thread.
-  double z_face_value(const Term& term, int i, int j, int j_end, int slot, bool electric) const;
-
   Lattice lattice_;
   PlaneWave plane_wave_;
-  long id_ = 0;  ///< of all surfaces of the process: a thread's kept values may be of another
   StepBlock block_;
   std::vector<char> is_active_;  // [slot]
+  // Rows that terms of faces across x and y belong to: [E, H][i (ny + 1) + j].
+  std::array<std::vector<char>, 2> has_side_terms_;
   AddIncident<Real> add_ = add_incident<Real>(best_vector_code());
   WaveMedium medium_;
   std::unique_ptr<IncidentWave> wave_;

@@ -238,10 +238,10 @@ AuditRecorder<Real>::AuditRecorder(const Problem& problem, Captures<Real>& captu
       box.first[normal] = face.planes[p].normal_index;
       for (std::size_t t = 0; t < 2; ++t)
         box.count[static_cast<std::size_t>(index_of(tangential[t]))] = face.planes[p].shape[t];
-      Plane plane{record_.faces.size() - 1, p, captures.add(set, box), box.size(), {}, {}, {}};
-      plane.block.resize(plane.size * audit_block_samples);
-      plane.sum_real.assign(plane.size * record_.frequencies_hz.size(), 0.0);
-      plane.sum_imag.assign(plane.size * record_.frequencies_hz.size(), 0.0);
+      Plane plane{record_.faces.size() - 1, p, captures.add(set, box), box.size(), {}, {}};
+      plane.block = AlignedArray<Real>(plane.size * audit_most_samples + sum_group);
+      plane.sums = AlignedArray<double>(plane.n_groups() * sums_per_group());
+      std::fill_n(plane.sums.data(), plane.sums.size(), 0.0);
       planes_.push_back(std::move(plane));
     }
   }
@@ -256,13 +256,8 @@ void AuditRecorder<Real>::before_block(const StepBlock& block) {
     kept_steps_.push_back(step);
     ++n_new_;
     for (Plane& plane : planes_)
-      if (plane.block.size() < plane.size * (place + 1)) plane.block.resize(plane.size * (place + 1));
+      captures_.aim(plane.capture, static_cast<int>(step - block.first), plane.block.data() + plane.size * place);
   }
-  // Only now: growing moves the samples.
-  for (std::size_t place = kept_steps_.size() - n_new_; place < kept_steps_.size(); ++place)
-    for (Plane& plane : planes_)
-      captures_.aim(plane.capture, static_cast<int>(kept_steps_[place] - block.first),
-                    plane.block.data() + plane.size * place);
 }
 
 template <class Real>
@@ -279,15 +274,16 @@ void AuditRecorder<Real>::add_kept(Plane& plane, std::size_t begin, std::size_t 
       minus_sine.push_back(-std::sin(phase));
     }
   }
-  // Short pieces, so that a piece of all samples stays in cache while the frequencies take turns.
-  constexpr std::size_t piece = 512;
-  for (std::size_t from = begin; from < end; from += piece) {
-    const std::size_t n = std::min(piece, end - from);
-    for (std::size_t f = 0; f < record_.frequencies_hz.size(); ++f)
-      add_samples_(plane.block.data() + from, plane.size, n_samples, cosine.data() + f * n_samples,
-                   minus_sine.data() + f * n_samples, plane.sum_real.data() + f * plane.size + from,
-                   plane.sum_imag.data() + f * plane.size + from, n);
-  }
+  SampleBlock<Real> block;
+  block.samples = plane.block.data() + begin * sum_group;
+  block.sample_stride = plane.size;
+  block.n_samples = n_samples;
+  block.cosine = cosine.data();
+  block.minus_sine = minus_sine.data();
+  block.n_frequencies = record_.frequencies_hz.size();
+  block.sums = plane.sums.data() + begin * sums_per_group();
+  block.n_groups = end - begin;
+  add_samples_(block);
 }
 
 template <class Real>
@@ -295,7 +291,7 @@ void AuditRecorder<Real>::after_block_shared(int thread, int threads) {
   if (!is_full()) return;
   for (Plane& plane : planes_) {
     const auto t = static_cast<std::size_t>(thread), n = static_cast<std::size_t>(threads);
-    add_kept(plane, plane.size * t / n, plane.size * (t + 1) / n);
+    add_kept(plane, plane.n_groups() * t / n, plane.n_groups() * (t + 1) / n);
   }
 }
 
@@ -307,12 +303,17 @@ void AuditRecorder<Real>::after_block() {
 template <class Real>
 AuditRecord AuditRecorder<Real>::finish() {
   for (Plane& plane : planes_) {
-    add_kept(plane, 0, plane.size);
+    add_kept(plane, 0, plane.n_groups());
     AuditPlane& out = record_.faces[plane.face].planes[plane.plane];
     const double unit = record_.sample_every * dt_s_ * (is_electric(out.component) ? 1.0 : 1.0 / eta0_ohm);
-    out.sums.resize(plane.sum_real.size());
-    for (std::size_t n = 0; n < out.sums.size(); ++n)
-      out.sums[n] = {unit * plane.sum_real[n], unit * plane.sum_imag[n]};
+    const std::size_t n_frequencies = record_.frequencies_hz.size();
+    out.sums.resize(plane.size * n_frequencies);
+    for (std::size_t f = 0; f < n_frequencies; ++f)
+      for (std::size_t m = 0; m < plane.size; ++m) {
+        const double* sum =
+            plane.sums.data() + m / sum_group * sums_per_group() + 2 * f * sum_group + m % sum_group;
+        out.sums[f * plane.size + m] = {unit * sum[0], unit * sum[sum_group]};
+      }
     plane = Plane{};
   }
   planes_.clear();

@@ -9,6 +9,7 @@
 #include <complex>
 
 #include "geometry/painter.hpp"
+#include "solver/aligned_array.hpp"
 #include "solver/recorders/captures.hpp"
 #include "solver/recorders/recorder.hpp"
 #include "solver/results.hpp"
@@ -16,8 +17,9 @@
 
 namespace wanewall {
 
-/// Samples that are kept before they are added.
+/// Samples that are kept before they are added; there is room for those of one block of steps more.
 inline constexpr std::size_t audit_block_samples = 16;
+inline constexpr std::size_t audit_most_samples = audit_block_samples + most_tile_steps;
 inline constexpr double audit_alias_level = 1e-8;
 
 /// Q for a problem: as asked, or from the spectra of its pulses.
@@ -43,13 +45,15 @@ class AuditRecorder : public Recorder {
     std::size_t face, plane;
     int capture;
     std::size_t size;
-    std::vector<Real> block;                 ///< [sample][position]; grows when one block of steps has more
-    std::vector<double> sum_real, sum_imag;  ///< [frequency][position]
+    AlignedArray<Real> block;                ///< [sample][position]
+    AlignedArray<double> sums;  ///< see SampleBlock
+    std::size_t n_groups() const { return (size + sum_group - 1) / sum_group; }
   };
   bool samples(long step) const { return step % record_.sample_every == 0; }
   /// Whether another block like the last would make more samples than are to be kept.
   bool is_full() const { return n_new_ > 0 && kept_steps_.size() + n_new_ > audit_block_samples; }
-  /// Adds what is kept to the sums of positions [begin, end) of a plane.
+  std::size_t sums_per_group() const { return record_.frequencies_hz.size() * 2 * sum_group; }
+  /// Adds what is kept to the sums of groups [begin, end) of a plane.
   void add_kept(Plane& plane, std::size_t begin, std::size_t end);
 
   AuditRecord record_;

@@ -25,6 +25,8 @@ int Captures<Real>::add(int set, const CaptureBox& box) {
       throw std::logic_error("a capture reaches beyond the lattice");
   }
   boxes_.push_back(box);
+  singles_.push_back(
+      {box.component, box.count[2] == 1 ? source_index(lattice_, box.component, Axis::z, box.first[2]) : -1});
   set_of_box_.push_back(static_cast<std::size_t>(set));
   return static_cast<int>(boxes_.size()) - 1;
 }

@@ -50,7 +50,12 @@ class Captures {
       const Rows& rows = (electric ? e_rows_ : h_rows_)[set];
       for (std::uint32_t n = rows.start[row]; n < rows.start[row + 1]; ++n) {
         const Entry& entry = rows.entries[n];
-        if (Real* target = targets_[static_cast<std::size_t>(slot) * boxes_.size() + entry.box])
+        Real* target = targets_[static_cast<std::size_t>(slot) * boxes_.size() + entry.box];
+        if (!target) continue;
+        const SingleValue& single = singles_[entry.box];
+        if (single.k >= 0)
+          target[entry.row_in_box] = fields.row(single.component, i, j)[single.k];
+        else
           copy(entry, i, j, fields, target);
       }
     }
@@ -61,6 +66,11 @@ class Captures {
   struct Entry {
     std::uint32_t box;
     std::uint32_t row_in_box;
+  };
+  /// Of boxes one value deep along z: planes across z have many rows and little of each. k < 0: not such a box.
+  struct SingleValue {
+    Component component;
+    int k;
   };
   /// Entries of row n: [start[n], start[n + 1]).
   struct Rows {
@@ -74,6 +84,7 @@ class Captures {
   std::size_t n_j_ = 0, n_sets_ = 0;
   std::vector<CaptureBox> boxes_;
   std::vector<std::size_t> set_of_box_;
+  std::vector<SingleValue> singles_;
   std::vector<Real*> targets_;  // [slot][box]
   std::vector<char> is_aimed_;  // [slot][set]
   std::vector<Rows> e_rows_, h_rows_;
