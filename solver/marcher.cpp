@@ -187,6 +187,9 @@ void Marcher<Real>::make_places() {
           place.c = stretch[a].c[at];
           place.late = stretch[a].late[at] != 0;
         }
+        // Mirrored neighbours of magnetic walls are put into the task itself, and no row may inherit them.
+        place.follows = index > 1 && index < n && place.slot < 0 && places.back().slot < 0 &&
+                        place.beside == places.back().beside;
         places.push_back(place);
       }
     }
@@ -262,6 +265,32 @@ void Marcher<Real>::fill_task(int i, int j, bool electric, RowTask<Real>& t) {
     t.y_late = y.late;
     t.y_psi_first = memory.y(y.slot, i, 0);
     t.y_psi_second = memory.y(y.slot, i, 1);
+  }
+  const RowMedia<Real>& media = (electric ? e_media_ : h_media_).row(i, j);
+  t.spans = media.spans.data();
+  t.n_spans = static_cast<int>(media.spans.size());
+}
+
+/// From the task of row (i, j - 1) to that of row (i, j): the same as filling it anew, in less time.
+template <class Real>
+void Marcher<Real>::step_task(int i, int j, bool electric, RowTask<Real>& t) {
+  const Place& y = places_[electric ? 0 : 1][1][static_cast<std::size_t>(j)];
+  if (!y.follows) {
+    t = RowTask<Real>();
+    fill_task(i, j, electric, t);
+    return;
+  }
+  const std::ptrdiff_t row = layout_.row;
+  for (std::size_t c = 0; c < 3; ++c) {
+    t.own[c] += row;
+    t.other[c] += row;
+    t.beside_x[c] += row;
+    t.beside_y[c] += row;
+  }
+  t.inv_y = y.inv;
+  if (t.x_psi_first) {
+    t.x_psi_first += 2 * row;
+    t.x_psi_second += 2 * row;
   }
   const RowMedia<Real>& media = (electric ? e_media_ : h_media_).row(i, j);
   t.spans = media.spans.data();
@@ -401,7 +430,16 @@ void Marcher<Real>::advance_e(const RowBlock& block, long step, const Ahead& ahe
       advance_e_group({block.i0, block.i1, j, group_end}, slot, ahead);
       j = group_end;
     } else if (single) {
-      for (; j < run_end; ++j) advance_e_row(block.i0, j, run_end, slot, {}, ahead);
+      RowTask<Real> t;
+      fill_task(block.i0, j, true, t);
+      set_ahead(ahead, t);
+      for (const int first = j; j < run_end; ++j) {
+        if (j > first) {
+          step_task(block.i0, j, true, t);
+          if (t.ahead == 0) set_ahead(ahead, t);
+        }
+        advance_e_task(block.i0, j, run_end, slot, t);
+      }
     } else {
       advance_e_group({block.i0, block.i1, j, run_end}, slot, ahead);
       j = run_end;
@@ -489,13 +527,17 @@ void Marcher<Real>::mirror_h(int i, int j, RowTask<Real>& t) {
 }
 
 template <class Real>
-void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given& given,
-                                  const Ahead& ahead) {
-  RowTask<Real> t;
-  fill_task(i, j, true, t);
+void Marcher<Real>::set_ahead(const Ahead& ahead, RowTask<Real>& t) const {
   t.ahead = layout_.at(ahead.planes, ahead.rows);
   t.ahead_begin = layout_.row * ahead.part / ahead.parts;
   t.ahead_end = layout_.row * (ahead.part + 1) / ahead.parts;
+}
+
+template <class Real>
+void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given& given, const Ahead& ahead) {
+  RowTask<Real> t;
+  fill_task(i, j, true, t);
+  set_ahead(ahead, t);
   if (given.x) {
     t.x_given_first = given.x;
     t.x_given_second = given.x + layout_.row;
@@ -504,6 +546,11 @@ void Marcher<Real>::advance_e_row(int i, int j, int j_end, int slot, const Given
     t.y_given_first = given.y;
     t.y_given_second = given.y + layout_.row;
   }
+  advance_e_task(i, j, j_end, slot, t);
+}
+
+template <class Real>
+void Marcher<Real>::advance_e_task(int i, int j, int j_end, int slot, RowTask<Real>& t) {
   const unsigned extra = extras_[0][static_cast<std::size_t>(i) * static_cast<std::size_t>(layout_.ny + 1) +
                                     static_cast<std::size_t>(j)];
   if (extra & has_mirror) mirror_h(i, j, t);
@@ -549,9 +596,11 @@ void Marcher<Real>::advance_h(const RowBlock& block, long step) {
   for (int i = block.i0; i < block.i1; ++i) {
     const unsigned char* extras =
         extras_[1].data() + static_cast<std::size_t>(i) * static_cast<std::size_t>(layout_.ny + 1);
+    if (block.j0 >= block.j1) continue;
+    RowTask<Real> t;
+    fill_task(i, block.j0, false, t);
     for (int j = block.j0; j < block.j1; ++j) {
-      RowTask<Real> t;
-      fill_task(i, j, false, t);
+      if (j > block.j0) step_task(i, j, false, t);
       kernels_.advance_h(t);
       add_z_layers(t, h_media_.row(i, j), i, j, false);
       if ((extras[j] & on_surface) && surface_->is_active(slot))

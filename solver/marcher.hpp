@@ -80,6 +80,7 @@ class Marcher : public RowWork {
     Real inv = 0, b = 0, c = 0;
     bool late = false;
     int slot = -1;
+    bool follows = false;  ///< along y: the task differs from that of the row before only in where it points
   };
   /// What a row has to do beside its curl and its layers.
   enum Extra : unsigned char { on_surface = 1, has_dipole = 2, is_captured = 4, has_mirror = 8 };
@@ -106,6 +107,9 @@ class Marcher : public RowWork {
     return columns_[static_cast<std::size_t>(index_of(side_of(axis, high)))];
   }
   void fill_task(int i, int j, bool electric, RowTask<Real>& t);
+  void step_task(int i, int j, bool electric, RowTask<Real>& t);
+  void set_ahead(const Ahead& ahead, RowTask<Real>& t) const;
+  void advance_e_task(int i, int j, int j_end, int slot, RowTask<Real>& t);
   void add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j, bool electric);
   void add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media);
   void hold_z_walls(const RowTask<Real>& t);
