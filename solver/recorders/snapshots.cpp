@@ -112,7 +112,7 @@ void SnapshotRecorder<Real>::hand_over(const Part& part, const std::vector<Real>
     }
   }
   snapshot.values = std::move(values);
-  sink_.take(snapshot);
+  sink_.take(std::move(snapshot));
 }
 
 template <class Real>
