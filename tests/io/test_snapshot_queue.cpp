@@ -174,3 +174,30 @@ TEST_CASE("A queue that is given up ends with the snapshot it is writing", "[que
   CHECK(sink.got.size() >= 1);
   for (std::size_t n = 0; n < sink.got.size(); ++n) CHECK(sink.got[n].step == static_cast<long>(n));
 }
+
+TEST_CASE("The memory of a queue is all its snapshots, or what it holds at most", "[queue]") {
+  Problem p;
+  p.precision = Precision::double_precision;
+  for (auto& lines : p.lattice.lines) lines = MeshLines::uniform(0.0, 1e-3, 300);
+  p.lattice.dt_s = 1e-12;
+  p.stop.at_s = 10e-12;
+  CHECK(snapshot_queue_bytes(p) == 0.0);
+  SnapshotRequest request;
+  request.name = "cut";
+  request.components = {Component::ez};
+  request.normal = Axis::z;
+  request.lo_m = {0.0, 0.0, 0.1};
+  request.hi_m = {0.3, 0.3, 0.1};
+  request.every = 5;
+  p.recording.snapshots = {request};
+  CHECK(snapshot_queue_bytes(p) == 3 * 8.0 * 301 * 301);  // steps 0, 5, 10
+  request.normal.reset();
+  request.lo_m[2] = 0.0;
+  request.hi_m[2] = 0.3;
+  p.recording.snapshots = {request};
+  CHECK(snapshot_queue_bytes(p) == 2 * 8.0 * 301 * 301 * 300);  // two are more than the usual bytes
+  request.stride = 2;
+  request.every = 1;
+  p.recording.snapshots = {request};
+  CHECK(snapshot_queue_bytes(p) == 256.0 * 1024 * 1024);  // eleven of 27 MB
+}
