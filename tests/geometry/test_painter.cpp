@@ -199,6 +199,15 @@ TEST_CASE("Rows are what their edges and faces are one by one, to the last bit",
   CHECK(n_unlike > 1000);
 }
 
+TEST_CASE("A painter does not take rows from one that stood in the same place", "[painter]") {
+  Canvas canvas;
+  canvas.objects.push_back({Layer{Axis::z, 2.0, 5.0}, 0, "layer"});
+  for (int n = 0; n < 50; ++n) {
+    canvas.objects[0].medium = n % 2;
+    CHECK(canvas.at(Component::ez, {4, 4, 3}).relative == (n % 2 == 0 ? 1.0 : 5.0));
+  }
+}
+
 TEST_CASE("Blocks are the shapes that every line crosses alike", "[shapes]") {
   CHECK(is_block(Box{{0, 0, 0}, {2, 3, 4}, {0, 0, 1}, 0.0}));
   CHECK_FALSE(is_block(Box{{0, 0, 0}, {2, 3, 4}, {0, 0, 1}, 0.1}));
