@@ -3,9 +3,16 @@
 #include <fmt/format.h>
 
 #include "io/provenance.hpp"
+#include "io/snapshot_queue.hpp"
 #include "io/terminal.hpp"
 
 namespace wanewall {
+
+Footprint run_footprint(const Problem& problem) {
+  Footprint footprint = footprint_of(problem);
+  footprint.snapshots += snapshot_queue_bytes(problem);
+  return footprint;
+}
 
 void require_memory(const Footprint& footprint, const std::string& run) {
   const double needed = footprint.total();

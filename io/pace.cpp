@@ -23,7 +23,7 @@ YAML::Node load(const std::string& path) {
 }
 
 struct Nobody : Sink {
-  void take(const Snapshot&) override {}
+  void take(Snapshot) override {}
 };
 
 /// Ends a run after a while and notes how far it was half way.

@@ -3,6 +3,7 @@
 
 #include <array>
 #include <memory>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -16,6 +17,8 @@ struct Provenance {
   std::string started_utc, ended_utc;  ///< "YYYY-MM-DD HH:mm:ss +0000"
   int threads = 0;
   std::string vector_code, schedule;
+  /// How long the run waited for its snapshots to be written [s]; empty when it had none.
+  std::optional<double> disk_wait_s{};
   /// For a witness run: the record that it checks, the faces whose layers were exchanged, and for what. Else
   /// empty.
   std::string witness_of{}, witness_faces{}, witness_layer{};
@@ -30,7 +33,7 @@ class RecordWriter : public Sink {
   RecordWriter(const RecordWriter&) = delete;
   RecordWriter& operator=(const RecordWriter&) = delete;
 
-  void take(const Snapshot& snapshot) override;
+  void take(Snapshot snapshot) override;
   /// Adds the run's series, audit and provenance, closes, syncs and renames. With `xdmf`, also writes path +
   /// ".xdmf".
   void finish(const RunResult& result, const Provenance& provenance, bool xdmf);

@@ -212,6 +212,7 @@ Provenance read_provenance(const hdf5::File& file) {
   p.threads = small_integer(group.integer("threads"), group, "threads");
   p.vector_code = group.text("vectorCode");
   p.schedule = group.text("schedule");
+  if (group.has_attribute("diskWaitSeconds")) p.disk_wait_s = group.number("diskWaitSeconds");
   if (group.has_attribute("witnessOf")) {
     p.witness_of = group.text("witnessOf");
     p.witness_faces = group.text("witnessFaces");

@@ -185,6 +185,7 @@ void write_provenance(hdf5::File& file, const Provenance& provenance) {
   group.set_integer("threads", provenance.threads);
   group.set_text("vectorCode", provenance.vector_code);
   group.set_text("schedule", provenance.schedule);
+  if (provenance.disk_wait_s) group.set_number("diskWaitSeconds", *provenance.disk_wait_s);
   if (!provenance.witness_of.empty()) {
     group.set_text("witnessOf", provenance.witness_of);
     group.set_text("witnessFaces", provenance.witness_faces);
@@ -235,7 +236,7 @@ RecordWriter::RecordWriter(const std::string& path, const Scene& scene) {
 
 RecordWriter::~RecordWriter() = default;
 
-void RecordWriter::take(const Snapshot& snapshot) {
+void RecordWriter::take(Snapshot snapshot) {
   state_->meshes.take(snapshot);
 }
 

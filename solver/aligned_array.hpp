@@ -1,5 +1,5 @@
-// Memory for rows: page aligned, asked for in huge pages where the system has them, left untouched so that
-// the thread that first writes a row owns its page.
+// Memory for rows: whole cache lines; large arrays in huge pages where the system has them, left untouched so
+// that the thread that first writes a row owns its page.
 #pragma once
 
 #include <sys/mman.h>
@@ -19,12 +19,13 @@ class AlignedArray {
   AlignedArray() = default;
   explicit AlignedArray(std::size_t size) : size_(size) {
     constexpr std::size_t huge_page = std::size_t{1} << 21;
-    const std::size_t page = size * sizeof(T) >= huge_page ? huge_page : 4096;
-    const std::size_t bytes = (size * sizeof(T) + page - 1) / page * page;
+    const bool is_large = size * sizeof(T) >= huge_page;
+    const std::size_t unit = is_large ? huge_page : cache_line_bytes;
+    const std::size_t bytes = (size * sizeof(T) + unit - 1) / unit * unit;
     if (bytes == 0) return;
-    data_.reset(static_cast<T*>(std::aligned_alloc(page, bytes)));
+    data_.reset(static_cast<T*>(std::aligned_alloc(unit, bytes)));
     if (!data_) throw std::bad_alloc();
-    madvise(data_.get(), bytes, MADV_HUGEPAGE);
+    if (is_large) madvise(data_.get(), bytes, MADV_HUGEPAGE);
   }
   T* data() { return data_.get(); }
   const T* data() const { return data_.get(); }

@@ -164,8 +164,7 @@ RowMedia<Real> compress(const std::array<std::vector<Pair<Real>>, 3>& values) {
   constexpr int line = static_cast<int>(cache_line_bytes / sizeof(Real));
   const int length = static_cast<int>(values[0].size());
   RowMedia<Real> media;
-  std::vector<std::size_t> mixed_at;
-  std::vector<Real> mixed;
+  std::vector<bool> is_mixed;
   for (int begin = 0; begin < length; begin += line) {
     MediaSpan<Real> span;
     span.begin = begin;
@@ -182,7 +181,7 @@ RowMedia<Real> compress(const std::array<std::vector<Pair<Real>>, 3>& values) {
     if (still) continue;
     if (!media.spans.empty() && media.spans.back().end == begin) {
       MediaSpan<Real>& last = media.spans.back();
-      const bool last_uniform = mixed_at.back() == std::string::npos;
+      const bool last_uniform = !is_mixed.back();
       if ((!uniform && !last_uniform) ||
           (uniform && last_uniform && std::equal(last.decay, last.decay + 3, span.decay) &&
            std::equal(last.gain, last.gain + 3, span.gain))) {
@@ -191,25 +190,22 @@ RowMedia<Real> compress(const std::array<std::vector<Pair<Real>>, 3>& values) {
       }
     }
     media.spans.push_back(span);
-    mixed_at.push_back(uniform ? std::string::npos : 0);
+    is_mixed.push_back(!uniform);
   }
+  std::size_t n_mixed = 0;
+  for (std::size_t n = 0; n < media.spans.size(); ++n)
+    if (is_mixed[n]) n_mixed += 6 * static_cast<std::size_t>(media.spans[n].end - media.spans[n].begin);
+  media.mixed = AlignedArray<Real>(n_mixed);
+  Real* next = media.mixed.data();
   for (std::size_t n = 0; n < media.spans.size(); ++n) {
-    if (mixed_at[n] == std::string::npos) continue;
-    mixed_at[n] = mixed.size();
-    const MediaSpan<Real>& span = media.spans[n];
+    if (!is_mixed[n]) continue;
+    MediaSpan<Real>& span = media.spans[n];
+    span.mixed = next;
     for (const auto& component : values) {
-      for (const bool gain : {false, true}) {
-        for (int k = span.begin; k < span.end; ++k) {
-          const Pair<Real>& p = component[static_cast<std::size_t>(k)];
-          mixed.push_back(gain ? p.gain : p.decay);
-        }
-      }
+      const auto first = component.begin() + span.begin, last = component.begin() + span.end;
+      next = std::transform(first, last, next, [](const Pair<Real>& p) { return p.decay; });
+      next = std::transform(first, last, next, [](const Pair<Real>& p) { return p.gain; });
     }
-  }
-  media.mixed = AlignedArray<Real>(mixed.size());
-  std::copy(mixed.begin(), mixed.end(), media.mixed.data());
-  for (std::size_t n = 0; n < media.spans.size(); ++n) {
-    if (mixed_at[n] != std::string::npos) media.spans[n].mixed = media.mixed.data() + mixed_at[n];
   }
   return media;
 }

@@ -26,7 +26,7 @@ struct Snapshot {
 class Sink {
  public:
   virtual ~Sink() = default;
-  virtual void take(const Snapshot& snapshot) = 0;
+  virtual void take(Snapshot snapshot) = 0;
 };
 
 /// How far a run is.

@@ -31,7 +31,7 @@ ExitCode check(const CheckOptions& options) {
     return ExitCode::done;
   }
   const Scene scene = read_scene(options.scene_path);
-  const Footprint footprint = footprint_of(scene.problem);
+  const Footprint footprint = run_footprint(scene.problem);
   scene::ReportOptions report{options.values, machine_memory_bytes()};
   if (options.time) {
     constexpr double for_seconds = 8.0;

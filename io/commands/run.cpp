@@ -16,6 +16,7 @@
 #include "io/provenance.hpp"
 #include "io/record.hpp"
 #include "io/scene.hpp"
+#include "io/snapshot_queue.hpp"
 #include "io/tables_document.hpp"
 #include "io/terminal.hpp"
 #include "io/witness.hpp"
@@ -143,7 +144,7 @@ std::string start_text(const Scene& scene, const std::string& record_path) {
                      scene.problem.last_step(), scene.problem.lattice.dt_s * 1e12, record_path);
 }
 
-std::string cost_text(const RunResult& result, const Problem& problem) {
+std::string cost_text(const RunResult& result, const Problem& problem, std::optional<double> disk_wait_s) {
   std::string text = fmt::format("built in {}, marched in {}", duration_text(result.build_seconds),
                                  duration_text(result.march_seconds));
   if (result.march_seconds > 0.0) {
@@ -154,13 +155,15 @@ std::string cost_text(const RunResult& result, const Problem& problem) {
   if (result.schedule == Schedule::tiles)
     schedule = fmt::format("tiles of {} x {} rows and {} steps{}", result.tiles.x_rows, result.tiles.y_rows,
                            result.tiles.steps,
-                           problem.tiles                ? ""
+                           problem.tiles              ? ""
                            : result.tiles_are_settled ? " (found by trying)"
-                                                        : " (the run ended before all shapes were tried)");
+                                                      : " (the run ended before all shapes were tried)");
   else if (problem.schedule == Schedule::tiles)
     schedule += " (no tiles where x and y are both periodic)";
-  return text + fmt::format(" on {} thread{}, {}, {} code\n", result.threads, result.threads == 1 ? "" : "s",
-                            schedule, result.vector_code);
+  text += fmt::format(" on {} thread{}, {}, {} code", result.threads, result.threads == 1 ? "" : "s",
+                      schedule, result.vector_code);
+  if (disk_wait_s) text += fmt::format("; waited {} for the disk", duration_text(*disk_wait_s));
+  return text + "\n";
 }
 
 // Made from the file, not from what is still in memory, so that it is the same as `wanewall tables` would
@@ -193,13 +196,16 @@ Finished compute(const Planned& planned, const RunOptions& options) {
   RecordWriter writer(planned.record_path, scene);
   if (!options.quiet) say(start_text(scene, planned.record_path));
   Finished finished;
-  finished.result = run(scene.problem, writer, monitor);
+  SnapshotQueue queue(writer);
+  finished.result = run(scene.problem, queue, monitor);
   const RunResult& result = finished.result;
   monitor.close();
+  queue.finish();
   // A run of a moment says little of the next.
   if (!tiles_were_given && result.tiles_are_settled && result.march_seconds > 1.0)
-    remember_pace(scene.problem, {result.tiles, scene.problem.lattice.n_cells() *
-                                                    static_cast<double>(result.steps) / result.march_seconds});
+    remember_pace(scene.problem,
+                  {result.tiles, scene.problem.lattice.n_cells() * static_cast<double>(result.steps) /
+                                     result.march_seconds});
 
   Provenance provenance = provenance_of_program();
   provenance.started_utc = started;
@@ -207,6 +213,7 @@ Finished compute(const Planned& planned, const RunOptions& options) {
   provenance.threads = result.threads;
   provenance.vector_code = result.vector_code;
   provenance.schedule = name_of(result.schedule);
+  if (!scene.problem.recording.snapshots.empty()) provenance.disk_wait_s = queue.waited_s();
   if (!planned.witness_of.empty()) {
     provenance.witness_of = planned.witness_of;
     provenance.witness_faces = planned.witness_faces;
@@ -223,7 +230,7 @@ Finished compute(const Planned& planned, const RunOptions& options) {
     say(ending);
   }
   if (!options.quiet) {
-    say(cost_text(result, scene.problem) + "wrote " + planned.record_path + "\n");
+    say(cost_text(result, scene.problem, provenance.disk_wait_s) + "wrote " + planned.record_path + "\n");
     if (options.xdmf) say("wrote " + xdmf_path_of(planned.record_path) + "\n");
   }
   return finished;
@@ -277,19 +284,19 @@ ExitCode run_scene(const RunOptions& options) {
     }
   }
   if (!options.tiles.empty() && options.tiles[2] > most_tile_steps) {
-    warn(fmt::format("wanewall: --tiles: {} steps / at most {}\n  next: wanewall run --help\n", options.tiles[2],
-                     most_tile_steps));
+    warn(fmt::format("wanewall: --tiles: {} steps / at most {}\n  next: wanewall run --help\n",
+                     options.tiles[2], most_tile_steps));
     return ExitCode::command_line;
   }
   // All that can stop either run is found before the first begins.
   require_free_targets(first.record_path, options);
   if (options.witness)
     require_free_targets(witness_record_path(first.record_path, faces, first.scene.problem), options);
-  require_memory(footprint_of(first.scene.problem));
+  require_memory(run_footprint(first.scene.problem));
   std::optional<WitnessScene> witness;
   if (options.witness) {
     witness = witness_scene(first.scene, faces);
-    require_memory(footprint_of(witness->scene.problem), "the witness run");
+    require_memory(run_footprint(witness->scene.problem), "the witness run");
   }
 
   const StopSignals signals;
@@ -318,9 +325,10 @@ void add_run_command(CLI::App& app, Action& action) {
       ->add_option("--schedule", options->schedule, "Order in which rows are visited; the result is the same")
       ->check(CLI::IsMember({"plain", "fused", "tiles"}));
   command
-      ->add_option("--tiles", options->tiles,
-                   "Tile size of the tiled schedule: rows along x, rows along y, steps; default: the scene's, else "
-                   "what was fastest before, else found by trying")
+      ->add_option(
+          "--tiles", options->tiles,
+          "Tile size of the tiled schedule: rows along x, rows along y, steps; default: the scene's, else "
+          "what was fastest before, else found by trying")
       ->expected(3)
       ->check(CLI::Range(1, 100000));
   command->add_flag("--no-pin", options->no_pin, "Let the system move threads between processors");

@@ -8,10 +8,10 @@
 #include "geometry/constants.hpp"
 #include "io/quantity.hpp"
 #include "io/scene/resolution.hpp"
+#include "io/scene/snapshot_size.hpp"
 #include "io/scene/source.hpp"
 #include "io/scene/text_table.hpp"
 #include "io/terminal.hpp"
-#include "solver/interpolation.hpp"
 #include "solver/shell/design.hpp"
 
 namespace wanewall::scene {
@@ -326,30 +326,6 @@ double continuum_reflection_db(const Problem& problem, Side side) {
     integral += cell_m / 6.0 * (e(d) + 4.0 * h(d) + next);
   }
   return 20.0 * std::log10(std::exp(1.0)) * -2.0 * index * eta0_ohm * integral;
-}
-
-double snapshot_values(const Problem& problem) {
-  const Lattice& lattice = problem.lattice;
-  double total = 0.0;
-  for (const SnapshotRequest& request : problem.recording.snapshots) {
-    const double times =
-        std::floor(static_cast<double>(problem.last_step()) / static_cast<double>(request.every)) + 1.0;
-    for (Component c : request.components) {
-      double positions = 1.0;
-      for (Axis a : all_axes) {
-        if (request.normal == a) continue;
-        const auto i = static_cast<std::size_t>(index_of(a));
-        // As the recorder does: out to the next index beyond each end.
-        const LinearPair lo = linear_pair(lattice, c, a, request.lo_m[i]);
-        const LinearPair hi = linear_pair(lattice, c, a, request.hi_m[i]);
-        const int first = lo.upper_weight == 1.0 ? lo.upper : lo.lower;
-        const int last = hi.upper_weight == 0.0 ? hi.lower : hi.upper;
-        positions *= std::ceil(static_cast<double>(last - first + 1) / request.stride);
-      }
-      total += times * positions;
-    }
-  }
-  return total;
 }
 
 std::string build_report(const Scene& scene, const Footprint& footprint, const ReportOptions& options) {

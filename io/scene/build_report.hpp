@@ -22,7 +22,4 @@ std::string build_report(const Scene& scene, const Footprint& footprint, const R
 /// layers.
 double continuum_reflection_db(const Problem& problem, Side side);
 
-/// Values that all snapshots of a run hold together, before compression.
-double snapshot_values(const Problem& problem);
-
 }  // namespace wanewall::scene

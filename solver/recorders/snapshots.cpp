@@ -98,6 +98,7 @@ void SnapshotRecorder<Real>::hand_over(const Part& part, const std::vector<Real>
   std::vector<Real> values;
   Index3 at{};
   const auto n_kept = [&](std::size_t a) { return static_cast<int>(part.positions_m[a].size()); };
+  values.reserve(part.positions_m[0].size() * part.positions_m[1].size() * part.positions_m[2].size());
   for (int x = 0; x < n_kept(0); ++x) {
     for (int y = 0; y < n_kept(1); ++y) {
       for (int z = 0; z < n_kept(2); ++z) {
@@ -112,7 +113,7 @@ void SnapshotRecorder<Real>::hand_over(const Part& part, const std::vector<Real>
     }
   }
   snapshot.values = std::move(values);
-  sink_.take(snapshot);
+  sink_.take(std::move(snapshot));
 }
 
 template <class Real>

@@ -48,11 +48,16 @@ class RandomScene {
  private:
   double uniform(double lo, double hi) { return std::uniform_real_distribution(lo, hi)(random_); }
 
-  /// Half of all coordinates lie where samples lie: on nodes, half nodes and a quarter cell beside them.
+  /// Half of all coordinates lie where samples lie: on nodes, half nodes and a quarter cell beside them. Some
+  /// lie so near that the painter's tolerance of 1e-6 of the smallest cell decides.
   double coordinate(const Lattice& lattice, Axis axis) {
     const MeshLines& lines = lattice.along(axis);
     const int n = std::uniform_int_distribution(0, lines.cells() - 1)(random_);
-    switch (std::uniform_int_distribution(0, 5)(random_)) {
+    switch (std::uniform_int_distribution(0, 7)(random_)) {
+      case 3:
+        return lines.node_m(n) + 2e-9 * uniform(-1.0, 1.0);
+      case 4:
+        return lines.half_m(n) + 2e-9 * uniform(-1.0, 1.0);
       case 0:
         return lines.node_m(n);
       case 1:

@@ -48,6 +48,19 @@ TEST_CASE("A record gives back the scene, the mesh and the provenance", "[record
   CHECK(record.provenance.schedule == p.schedule);
 }
 
+TEST_CASE("A record says how long its run waited for the disk, when it had snapshots to write", "[record]") {
+  const TemporaryFolder folder;
+  Provenance provenance = small_provenance();
+  for (const std::optional<double> wait_s : {std::optional<double>{}, std::optional<double>{0.375}}) {
+    provenance.disk_wait_s = wait_s;
+    {
+      RecordWriter writer(folder / "run.h5", small_scene());
+      writer.finish(small_result(), provenance, false);
+    }
+    CHECK(Record(folder / "run.h5").provenance.disk_wait_s == wait_s);
+  }
+}
+
 TEST_CASE("A record says exactly what shell ran and what the audit's split needs of the media", "[record]") {
   const TemporaryFolder folder;
   Scene scene = small_scene();

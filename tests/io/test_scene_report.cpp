@@ -7,6 +7,7 @@
 #include "io/scene.hpp"
 #include "io/scene/build_report.hpp"
 #include "io/scene/resolution.hpp"
+#include "io/scene/snapshot_size.hpp"
 
 using namespace wanewall;
 

@@ -15,7 +15,7 @@ using namespace wanewall;
 namespace {
 
 struct NoSink : Sink {
-  void take(const Snapshot&) override {}
+  void take(Snapshot) override {}
 };
 struct GoOn : Monitor {
   bool go_on(const Progress&) override { return true; }

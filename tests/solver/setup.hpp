@@ -11,7 +11,7 @@
 namespace wanewall::test {
 
 struct NoSink : Sink {
-  void take(const Snapshot&) override {}
+  void take(Snapshot) override {}
 };
 struct NoMonitor : Monitor {
   bool go_on(const Progress&) override { return true; }

@@ -14,7 +14,7 @@ using Complex = std::complex<double>;
 namespace {
 
 struct KeepSnapshots : Sink {
-  void take(const Snapshot& s) override { all.push_back(s); }
+  void take(Snapshot s) override { all.push_back(std::move(s)); }
   std::vector<Snapshot> all;
 };
 

@@ -114,7 +114,7 @@ Problem busy_problem(Kind kind, Precision precision) {
 }
 
 struct KeepSnapshots : Sink {
-  void take(const Snapshot& s) override { all.push_back(s); }
+  void take(Snapshot s) override { all.push_back(std::move(s)); }
   std::vector<Snapshot> all;
 };
 

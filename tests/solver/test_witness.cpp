@@ -14,7 +14,7 @@ namespace {
 constexpr double cell_m = 1e-3;
 
 struct NoSink : Sink {
-  void take(const Snapshot&) override {}
+  void take(Snapshot) override {}
 };
 struct GoOn : Monitor {
   bool go_on(const Progress&) override { return true; }
