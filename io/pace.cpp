@@ -51,11 +51,12 @@ class HalfTime : public Monitor {
 
 std::string pace_key(const Problem& problem) {
   const Index3 n = problem.lattice.cells();
-  std::string key = fmt::format(
-      "{} | {} threads | {} | {} x {} x {} |", provenance_of_program().processor,
-      problem.threads > 0 ? problem.threads : omp_get_num_procs(),
-      problem.precision == Precision::single_precision ? "single" : "double", n[0], n[1], n[2]);
-  for (Side side : all_sides) key += fmt::format(" {} {}", name_of(problem.face(side).kind), problem.face(side).cells());
+  std::string key =
+      fmt::format("{} | {} threads | {} | {} x {} x {} |", provenance_of_program().processor,
+                  problem.threads > 0 ? problem.threads : omp_get_num_procs(),
+                  problem.precision == Precision::single_precision ? "single" : "double", n[0], n[1], n[2]);
+  for (Side side : all_sides)
+    key += fmt::format(" {} {}", name_of(problem.face(side).kind), problem.face(side).cells());
   return key + fmt::format(" | {} | {} frequencies", problem.plane_wave ? "plane wave" : "no plane wave",
                            problem.recording.audit.frequencies_hz.size());
 }

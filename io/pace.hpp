@@ -1,5 +1,5 @@
-// What this machine is known to do with a kind of scene: the tiles that were fastest and the rate. Kept from run
-// to run in a file of the user's cache folder; nothing depends on it but time.
+// What this machine is known to do with a kind of scene: the tiles that were fastest and the rate. Kept from
+// run to run in a file of the user's cache folder; nothing depends on it but time.
 #pragma once
 
 #include <optional>
@@ -14,8 +14,8 @@ struct Pace {
   double cells_per_second = 0.0;
 };
 
-/// What the pace depends on: processor, threads, precision, cells along each axis, kinds of faces, sources and
-/// audit.
+/// What the pace depends on: processor, threads, precision, cells along each axis, kinds of faces, sources
+/// and audit.
 std::string pace_key(const Problem& problem);
 
 /// $XDG_CACHE_HOME/wanewall/pace.yaml, or ~/.cache in place of the variable; empty when neither is set.

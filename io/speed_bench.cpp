@@ -25,8 +25,7 @@ Problem bare_cube(int nx, int ny, int nz, int threads) {
   Problem problem;
   problem.media.push_back({"vacuum", 1.0, 1.0, 0.0, 0.0, false, false});
   const int cells[3]{nx, ny, nz};
-  for (std::size_t a = 0; a < 3; ++a)
-    problem.lattice.lines[a] = MeshLines::uniform(0.0, cell_m, cells[a]);
+  for (std::size_t a = 0; a < 3; ++a) problem.lattice.lines[a] = MeshLines::uniform(0.0, cell_m, cells[a]);
   problem.lattice.dt_s = courant * problem.lattice.courant_limit_s();
   problem.threads = threads;
   return problem;
@@ -244,7 +243,9 @@ SpeedResult measure_speed(const SpeedSetting& setting) {
   result.in_cache = {"in cache", "in_cache"};
 
   std::vector<Contender> contenders{
-      {{"textbook loop", "textbook", 120.0}, all, [&](long steps) { textbook.advance(static_cast<int>(steps)); }},
+      {{"textbook loop", "textbook", 120.0},
+       all,
+       [&](long steps) { textbook.advance(static_cast<int>(steps)); }},
       {{"bare cube, plain sweeps", "plain", 72.0}, all, bare_with(Schedule::plain, {})},
       {{"bare cube, fused sweep", "fused", 48.0}, all, bare_with(Schedule::fused, {})},
       {{"bare cube, tiles", "tiles", tiled_bytes(result.bare_tiles)},

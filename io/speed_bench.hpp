@@ -16,15 +16,15 @@ struct SpeedSetting {
   int steps = 16;   ///< in a round
   int rounds = 5;
   int threads = 2;
-  bool more = false;  ///< also one thread, double precision, shells without anything else
+  bool more = false;               ///< also one thread, double precision, shells without anything else
   std::optional<TileShape> tiles;  ///< none: found by trying, before anything is timed
 };
 
 struct SpeedRow {
   std::string name;
-  std::string id;                ///< for machines
+  std::string id;                    ///< for machines
   double bytes_per_cell_step = 0.0;  ///< that must cross the memory at the least; 0: not said
-  std::vector<double> rates{};   ///< Gcell/s (GB/s for the memory's own loops), one per round
+  std::vector<double> rates{};       ///< Gcell/s (GB/s for the memory's own loops), one per round
 
   double median() const;
   double least() const;
@@ -33,22 +33,22 @@ struct SpeedRow {
 
 struct SpeedResult {
   SpeedSetting setting;
-  std::vector<SpeedRow> memory;      ///< copy, triad
-  std::vector<SpeedRow> loops;       ///< textbook first
+  std::vector<SpeedRow> memory;  ///< copy, triad
+  std::vector<SpeedRow> loops;   ///< textbook first
   SpeedRow in_cache;
   TileShape bare_tiles, scene_tiles;
-  double largest_difference = 0.0;   ///< textbook loop against the solver
-  double bytes_per_cell = 0.0;       ///< memory of the full scene
+  double largest_difference = 0.0;  ///< textbook loop against the solver
+  double bytes_per_cell = 0.0;      ///< memory of the full scene
   std::string vector_code;
 
   const SpeedRow& loop(const std::string& id) const;
-  /// Bandwidth / 48 bytes [Gcell/s]: the most that a loop can do which takes every cell through the memory once
-  /// a step.
+  /// Bandwidth / 48 bytes [Gcell/s]: the most that a loop can do which takes every cell through the memory
+  /// once a step.
   double one_sweep_limit() const;
 };
 
-/// All loops take turns in every round, so that a machine that slows down slows all. Throws std::logic_error when
-/// two that must compute the same do not: then nothing may be printed.
+/// All loops take turns in every round, so that a machine that slows down slows all. Throws std::logic_error
+/// when two that must compute the same do not: then nothing may be printed.
 SpeedResult measure_speed(const SpeedSetting& setting);
 
 /// The scene called full: a Moebius shell of ten cells on six faces, an oblique plane wave, a metal ball, a

@@ -1,7 +1,7 @@
 // What the memory gives: the two loops by which people measure it. Used by `wanewall speed` and by nothing
 // else.
-//   Source: J. D. McCalpin, "Memory bandwidth and machine balance in current high performance computers", IEEE
-//   TCCA Newsletter (December 1995); the bytes counted are those the program names, as there.
+//   Source: J. D. McCalpin, "Memory bandwidth and machine balance in current high performance computers",
+//   IEEE TCCA Newsletter (December 1995); the bytes counted are those the program names, as there.
 #pragma once
 
 #include <cstddef>

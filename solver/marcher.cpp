@@ -569,7 +569,7 @@ void Marcher<Real>::advance_e_task(int i, int j, int j_end, int slot, RowTask<Re
 /// The rows that follow in the plane are sampled together with the first of them.
 template <class Real>
 const typename TotalFieldSurface<Real>::ZFaceLines& Marcher<Real>::surface_lines(bool electric, int i, int j,
-                                                                                  int j_end, int slot) {
+                                                                                 int j_end, int slot) {
   struct Kept {
     const void* owner = nullptr;
     long step = -1;

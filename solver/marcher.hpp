@@ -123,9 +123,9 @@ class Marcher : public RowWork {
   Fields<Real> fields_;
   MediaRows<Real> e_media_, h_media_;
   std::array<Stretch<Real>, 3> e_stretch_, h_stretch_;
-  std::array<MoebiusColumns<Real>, 6> columns_;        // by Side
-  std::array<std::vector<int>, 2> column_slot_;        // of nodes in Moebius layers along x and y, else -1
-  std::array<std::vector<ZPart>, 2> z_parts_;          // [E, H], low side first
+  std::array<MoebiusColumns<Real>, 6> columns_;  // by Side
+  std::array<std::vector<int>, 2> column_slot_;  // of nodes in Moebius layers along x and y, else -1
+  std::array<std::vector<ZPart>, 2> z_parts_;    // [E, H], low side first
   LayerMemory<Real> e_memory_, h_memory_, column_memory_;
   OneWayWalls<Real> one_way_;
   std::unique_ptr<TotalFieldSurface<Real>> surface_;

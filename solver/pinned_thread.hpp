@@ -1,4 +1,5 @@
-// Keeps a thread on one processor while it lives: rows that a core has in its caches are then met there again.
+// Keeps a thread on one processor while it lives: rows that a core has in its caches are then met there
+// again.
 #pragma once
 
 #include <sched.h>

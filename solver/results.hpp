@@ -134,7 +134,7 @@ struct RunResult {
   EnergySeries energy;
   AuditRecord audit;
   int threads = 1;
-  std::string vector_code;  ///< "AVX-512", "AVX2" or "baseline"
+  std::string vector_code;              ///< "AVX-512", "AVX2" or "baseline"
   Schedule schedule = Schedule::tiles;  ///< what was used, see Problem::schedule
   TileShape tiles;                      ///< of the tiled schedule
   bool tiles_are_settled = true;        ///< false when the run ended before all shapes had been tried

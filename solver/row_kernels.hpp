@@ -23,8 +23,8 @@ struct MediaSpan {
 };
 
 /// One row and what it needs. Pointers lead to k = 0; rows are padded to whole cache lines and aligned to
-/// them, except that reading one value before k = 0 and one cache line after the padding is allowed. Neighbour
-/// rows may be any row.
+/// them, except that reading one value before k = 0 and one cache line after the padding is allowed.
+/// Neighbour rows may be any row.
 ///   E: minus_x, minus_y are H rows at i - 1 and j - 1;  H: plus_x, plus_y are E rows at i + 1 and j + 1.
 template <class Real>
 struct RowTask {

@@ -14,7 +14,8 @@ int at(const std::vector<int>& begin, int group) {
 /// All E, then all H: the reference.
 void plain_sweep(const RowGroups& rows, int lo, int hi, long step, RowWork& work) {
   const int n_j = rows.j_begin.back();
-  for (int a = lo; a < hi; ++a) work.advance_e({at(rows.i_begin, a), at(rows.i_begin, a + 1), 0, n_j}, step, {});
+  for (int a = lo; a < hi; ++a)
+    work.advance_e({at(rows.i_begin, a), at(rows.i_begin, a + 1), 0, n_j}, step, {});
 #pragma omp barrier
   work.advance_h({at(rows.i_begin, lo), at(rows.i_begin, hi), 0, n_j}, step);
 #pragma omp barrier
@@ -95,13 +96,15 @@ TileSweep::Range TileSweep::Cuts::h(int tile, int s) const {
 }
 
 /// Cuts as even as groups allow. Beyond the last group lie as many empty ones as there are steps.
-TileSweep::Cuts TileSweep::cut(const std::vector<int>& begin, bool joined, int rows_per_tile, int n_steps) {
+TileSweep::Cuts TileSweep::cut(const std::vector<int>& begin, bool joined, int rows_per_tile, int n_steps,
+                               int multiple) {
   Cuts cuts;
   cuts.groups = static_cast<int>(begin.size()) - 1;
   cuts.joined = joined;
   if (joined) return cuts;
   const int rows = begin.back() + n_steps;
-  const int tiles = std::max(1, (rows + rows_per_tile / 2) / rows_per_tile);
+  int tiles = std::max(1, (rows + rows_per_tile / 2) / rows_per_tile);
+  if (tiles > multiple) tiles = (tiles + multiple - 1) / multiple * multiple;
   for (int t = 1; t < tiles; ++t) {
     const int row = static_cast<int>(static_cast<long>(rows) * t / tiles);
     const int group =
@@ -122,11 +125,12 @@ TileShape TileSweep::real_shape(const TileShape& shape) const {
 }
 
 void TileSweep::prepare(const TileShape& shape, long first_step, int n_steps) {
-  x_ = cut(rows_.i_begin, joined_[0], shape.x_rows, n_steps);
-  y_ = cut(rows_.j_begin, joined_[1], shape.y_rows, n_steps);
+  moves_along_x_ = joined_[1] || (!joined_[0] && shape.x_rows < shape.y_rows);
+  // As many strips as give every thread the same number.
+  x_ = cut(rows_.i_begin, joined_[0], shape.x_rows, n_steps, moves_along_x_ ? 1 : threads_);
+  y_ = cut(rows_.j_begin, joined_[1], shape.y_rows, n_steps, moves_along_x_ ? threads_ : 1);
   first_step_ = first_step;
   n_steps_ = n_steps;
-  moves_along_x_ = joined_[1] || (!joined_[0] && shape.x_rows < shape.y_rows);
   width_ = moves_along_x_ ? shape.x_rows : shape.y_rows;
   n_along_ = moves_along_x_ ? x_.n() : y_.n();
   n_strips_ = joined_[0] || joined_[1] ? std::min(n_steps, threads_) : moves_along_x_ ? y_.n() : x_.n();

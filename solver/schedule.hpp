@@ -68,8 +68,8 @@ void sweep(Schedule schedule, const RowGroups& rows, const std::vector<int>& sla
 /// along x, the same with b along y, cut off at the ends of the lattice. Tile (a, b) may start when (a-1, b)
 /// and (a, b-1) are done. Groups are never cut, so a Moebius layer is one thick row.
 /// Threads take strips of tiles along the axis on which tiles are short, x or y, and follow one another; each
-/// waits only for the strip before its own. With tiles one plane thick, a strip is a wave front: what it needs
-/// next to the core is as many planes of its own width as there are steps.
+/// waits only for the strip before its own. With tiles one plane thick, a strip is a wave front: what it
+/// needs next to the core is as many planes of its own width as there are steps.
 ///
 /// A periodic axis is not cut: its tiles hold all of it. Then threads take parts of the steps in place of
 /// strips.
@@ -108,7 +108,7 @@ class TileSweep {
   struct alignas(64) Progress {
     std::atomic<int> done{0};
   };
-  static Cuts cut(const std::vector<int>& begin, bool joined, int rows_per_tile, int n_steps);
+  static Cuts cut(const std::vector<int>& begin, bool joined, int rows_per_tile, int n_steps, int multiple);
   void advance_tile(int a, int b, int s_begin, int s_end, RowWork& work) const;
 
   const RowGroups& rows_;

@@ -25,10 +25,10 @@ AddIncident<Real> add_incident(VectorCode code);
 inline constexpr std::size_t sum_group = 8;
 
 /// Samples of a field at positions, and the sums of their running DFT at several frequencies:
-///   real[f][m] += sum over s of cosine[f][s] sample[s][m], imag likewise with minus_sine; in double, in the order
-///   of s.
-/// Sums lie as [group of positions][frequency][real, imag][position in the group], so that they pass through the
-/// memory in one stream. Positions up to the end of the last group are read.
+///   real[f][m] += sum over s of cosine[f][s] sample[s][m], imag likewise with minus_sine; in double, in the
+///   order of s.
+/// Sums lie as [group of positions][frequency][real, imag][position in the group], so that they pass through
+/// the memory in one stream. Positions up to the end of the last group are read.
 template <class Real>
 struct SampleBlock {
   const Real* samples = nullptr;  ///< [n_samples][position], rows `sample_stride` apart

@@ -19,8 +19,8 @@ TileChoice::TileChoice(const RowGroups& rows, std::size_t row_bytes, int threads
   const auto add = [&](double x, double y, int steps) {
     const TileShape shape{std::clamp(static_cast<int>(std::lround(x)), 1, n_x),
                           std::clamp(static_cast<int>(std::lround(y)), 1, n_y), steps};
-    const bool known = std::any_of(trials_.begin(), trials_.end(),
-                                   [&](const Trial& trial) { return trial.shape == shape; });
+    const bool known =
+        std::any_of(trials_.begin(), trials_.end(), [&](const Trial& trial) { return trial.shape == shape; });
     if (!known) trials_.push_back({shape, 0.0});
   };
   // Shapes that do well with rows of 400 cells in single precision; others have as many bytes.
@@ -53,8 +53,9 @@ void TileChoice::took(int steps, double seconds) {
   if (!turns_.empty()) return;
   std::vector<std::size_t> order(trials_.size());
   for (std::size_t n = 0; n < order.size(); ++n) order[n] = n;
-  std::sort(order.begin(), order.end(),
-            [&](std::size_t a, std::size_t b) { return trials_[a].seconds_per_step < trials_[b].seconds_per_step; });
+  std::sort(order.begin(), order.end(), [&](std::size_t a, std::size_t b) {
+    return trials_[a].seconds_per_step < trials_[b].seconds_per_step;
+  });
   best_ = order[0];
   if (is_final_) return;
   is_final_ = true;

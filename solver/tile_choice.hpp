@@ -1,5 +1,5 @@
-// Which tile shape is fastest for a scene on this machine: found by using each for a while. The fields come out
-// the same whatever the shape, so the steps of the search are steps of the run.
+// Which tile shape is fastest for a scene on this machine: found by using each for a while. The fields come
+// out the same whatever the shape, so the steps of the search are steps of the run.
 #pragma once
 
 #include <cstddef>

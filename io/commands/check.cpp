@@ -65,7 +65,8 @@ void add_check_command(CLI::App& app, Action& action) {
   schema->excludes(path)->excludes(values)->excludes(reference);
   reference->excludes(path)->excludes(values);
   command->footer(
-      "Without --time nothing is computed and nothing is written. A scene that cannot work ends with exit code 3.\n\n"
+      "Without --time nothing is computed and nothing is written. A scene that cannot work ends with exit "
+      "code 3.\n\n"
       "Examples:\n"
       "  wanewall check drum.yaml\n"
       "  wanewall check drum.yaml --values\n"

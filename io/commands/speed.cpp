@@ -32,50 +32,59 @@ std::string result_text(const SpeedResult& r) {
   std::string text = fmt::format(
       "processor: {}, {} threads, {} code, single precision unless said otherwise\n"
       "cube of {} cells along each edge, all of them counted; {} rounds of {} steps in turn\n"
-      "full scene: Moebius shell of 10 cells on six faces, oblique plane wave, ball, block and rod, audit at 9 "
+      "full scene: Moebius shell of 10 cells on six faces, oblique plane wave, ball, block and rod, audit at "
+      "9 "
       "frequencies\n"
       "tiles: bare cube {}, full scene {}\n"
-      "checked: textbook loop and solver agree to {:.1e}, plain sweeps and tiles of the full scene bit for bit\n\n",
+      "checked: textbook loop and solver agree to {:.1e}, plain sweeps and tiles of the full scene bit for "
+      "bit\n\n",
       provenance_of_program().processor, s.threads, r.vector_code, s.cells, s.rounds, s.steps,
       shape_text(r.bare_tiles), shape_text(r.scene_tiles), r.largest_difference);
   text += "| memory    | median [GB/s] | least | most |\n| --------- | ------------: | ----: | ---: |\n";
   for (const SpeedRow& row : r.memory)
-    text += fmt::format("| {:<9} | {:13.1f} | {:5.1f} | {:4.1f} |\n", row.name, row.median(), row.least(), row.most());
-  text += fmt::format("\none sweep a step through the memory, 48 bytes a cell, could do {:.3f} Gcell/s; the fused "
-                      "loop in cache does {:.3f}\n\n",
-                      r.one_sweep_limit(), r.in_cache.median());
-  text += fmt::format("| {:<35} | median [Gcell/s] | least | most  | bytes per cell-step | of one-sweep limit | of "
-                      "in-cache rate | over textbook |\n",
-                      "loop");
+    text += fmt::format("| {:<9} | {:13.1f} | {:5.1f} | {:4.1f} |\n", row.name, row.median(), row.least(),
+                        row.most());
+  text += fmt::format(
+      "\none sweep a step through the memory, 48 bytes a cell, could do {:.3f} Gcell/s; the fused "
+      "loop in cache does {:.3f}\n\n",
+      r.one_sweep_limit(), r.in_cache.median());
+  text += fmt::format(
+      "| {:<35} | median [Gcell/s] | least | most  | bytes per cell-step | of one-sweep limit | of "
+      "in-cache rate | over textbook |\n",
+      "loop");
   text += fmt::format(
       "| {:-<35} | ---------------: | ----: | ----: | ------------------: | -----------------: | "
       "---------------: | ------------: |\n",
       "");
   for (const SpeedRow& row : r.loops)
-    text += fmt::format("| {:<35} | {:16.3f} | {:.3f} | {:.3f} | {:>19} | {:17.0f}% | {:15.0f}% | {:13.2f} |\n",
-                        row.name, row.median(), row.least(), row.most(),
-                        row.bytes_per_cell_step > 0.0 ? fmt::format("{:.1f}", row.bytes_per_cell_step) : "",
-                        100.0 * row.median() / r.one_sweep_limit(), 100.0 * row.median() / r.in_cache.median(),
-                        row.median() / r.loops[0].median());
+    text +=
+        fmt::format("| {:<35} | {:16.3f} | {:.3f} | {:.3f} | {:>19} | {:17.0f}% | {:15.0f}% | {:13.2f} |\n",
+                    row.name, row.median(), row.least(), row.most(),
+                    row.bytes_per_cell_step > 0.0 ? fmt::format("{:.1f}", row.bytes_per_cell_step) : "",
+                    100.0 * row.median() / r.one_sweep_limit(), 100.0 * row.median() / r.in_cache.median(),
+                    row.median() / r.loops[0].median());
   text += fmt::format(
       "\nbytes per cell-step: what the fields must move through the memory at the least\n"
       "tiles over fused, bare cube: {:.2f}; full scene over bare cube, tiles: {:.2f}\n",
-      r.loop("tiles").median() / r.loop("fused").median(), r.loop("full").median() / r.loop("tiles").median());
+      r.loop("tiles").median() / r.loop("fused").median(),
+      r.loop("full").median() / r.loop("tiles").median());
   if (s.more)
     text += fmt::format(
-        "{} threads over one, full scene: {:.2f}; double over single precision: {:.2f}; moebius over cfs_pml shell: "
+        "{} threads over one, full scene: {:.2f}; double over single precision: {:.2f}; moebius over cfs_pml "
+        "shell: "
         "{:.2f}\n",
         s.threads, r.loop("full").median() / r.loop("full_one_thread").median(),
         r.loop("full_double").median() / r.loop("full").median(),
         r.loop("moebius").median() / r.loop("cfs_pml").median());
-  text += fmt::format("memory of the full scene: {:.1f} bytes per cell (fields, layers, media)\n", r.bytes_per_cell);
+  text += fmt::format("memory of the full scene: {:.1f} bytes per cell (fields, layers, media)\n",
+                      r.bytes_per_cell);
   return text;
 }
 
 void emit_row(YAML::Emitter& out, const SpeedRow& row) {
-  out << YAML::BeginMap << YAML::Key << "id" << YAML::Value << row.id << YAML::Key << "name" << YAML::Value << row.name
-      << YAML::Key << "median" << YAML::Value << row.median() << YAML::Key << "rounds" << YAML::Value << row.rates
-      << YAML::EndMap;
+  out << YAML::BeginMap << YAML::Key << "id" << YAML::Value << row.id << YAML::Key << "name" << YAML::Value
+      << row.name << YAML::Key << "median" << YAML::Value << row.median() << YAML::Key << "rounds"
+      << YAML::Value << row.rates << YAML::EndMap;
 }
 
 std::string json(const std::vector<SpeedResult>& results) {
@@ -83,12 +92,13 @@ std::string json(const std::vector<SpeedResult>& results) {
   out << YAML::Flow << YAML::DoubleQuoted << YAML::BeginSeq;
   for (const SpeedResult& r : results) {
     const auto shape = [](const TileShape& t) { return std::vector<int>{t.x_rows, t.y_rows, t.steps}; };
-    out << YAML::BeginMap << YAML::Key << "program" << YAML::Value << version_text() << YAML::Key << "processor"
-        << YAML::Value << provenance_of_program().processor << YAML::Key << "threads" << YAML::Value
-        << r.setting.threads << YAML::Key << "vector_code" << YAML::Value << r.vector_code << YAML::Key << "cells"
-        << YAML::Value << r.setting.cells << YAML::Key << "steps" << YAML::Value << r.setting.steps << YAML::Key
-        << "bare_tiles" << YAML::Value << shape(r.bare_tiles) << YAML::Key << "scene_tiles" << YAML::Value
-        << shape(r.scene_tiles) << YAML::Key << "bytes_per_cell" << YAML::Value << r.bytes_per_cell;
+    out << YAML::BeginMap << YAML::Key << "program" << YAML::Value << version_text() << YAML::Key
+        << "processor" << YAML::Value << provenance_of_program().processor << YAML::Key << "threads"
+        << YAML::Value << r.setting.threads << YAML::Key << "vector_code" << YAML::Value << r.vector_code
+        << YAML::Key << "cells" << YAML::Value << r.setting.cells << YAML::Key << "steps" << YAML::Value
+        << r.setting.steps << YAML::Key << "bare_tiles" << YAML::Value << shape(r.bare_tiles) << YAML::Key
+        << "scene_tiles" << YAML::Value << shape(r.scene_tiles) << YAML::Key << "bytes_per_cell"
+        << YAML::Value << r.bytes_per_cell;
     out << YAML::Key << "memory_gb_per_s" << YAML::Value << YAML::BeginSeq;
     for (const SpeedRow& row : r.memory) emit_row(out, row);
     out << YAML::EndSeq << YAML::Key << "loops_gcell_per_s" << YAML::Value << YAML::BeginSeq;
@@ -156,16 +166,18 @@ void add_speed_command(CLI::App& app, Action& action) {
   command->add_option("--rounds", setting.rounds, "Rounds that count")
       ->check(CLI::Range(1, 100))
       ->capture_default_str();
-  command->add_option("--threads", setting.threads, "Threads; 0: one per processor")->check(CLI::Range(0, 1024));
+  command->add_option("--threads", setting.threads, "Threads; 0: one per processor")
+      ->check(CLI::Range(0, 1024));
   command
       ->add_option("--tiles", options->tiles, "Rows along x, rows along y, steps; default: found by trying")
       ->expected(3)
       ->check(CLI::Range(1, 100000));
   command->add_flag("--more", setting.more, "Also one thread, double precision, and shells without a scene");
   command->add_option("--json", options->json_path, "Also write every round's figures into this file");
-  command->add_option("--picture", options->picture_path,
-                      "Draw the rates over the size of the cube, as SVG; cubes from 48 to 480 unless --sizes says "
-                      "otherwise");
+  command->add_option(
+      "--picture", options->picture_path,
+      "Draw the rates over the size of the cube, as SVG; cubes from 48 to 480 unless --sizes says "
+      "otherwise");
   command->footer(
       "Needs about 220 bytes of memory per cell, 14 GB at 400 cells; with --more 380 bytes.\n\n"
       "Examples:\n"

@@ -55,23 +55,24 @@ const Block& stop() {
 }
 
 const Block& run() {
-  static const Block b{"run",
-                       "How the run is carried out. Nothing here changes a result.",
-                       {with_default("threads", whole(0, 4096), "0", "Threads; 0 takes one per processor."),
-                        with_default("schedule", words({"plain", "fused", "tiles"}), "tiles",
-                                     "Order in which rows are visited; plain is the slow reference. Tiles become fused "
-                                     "where x and y are both periodic."),
-                        optional("tiles", list_of(whole(1, 100000), 3, 3),
-                                 "Tile size of the tiled schedule: rows along x, rows along y, steps (at most 32). "
-                                 "Without it the fastest is found by trying while the run goes on, and "
-                                 "remembered on this machine."),
-                        with_default("pin", yes_no(), "true",
-                                     "Keeps each thread on a processor of its own when the run has as many "
-                                     "threads as there are processors.")},
-                       {},
-                       {},
-                       {},
-                       {}};
+  static const Block b{
+      "run",
+      "How the run is carried out. Nothing here changes a result.",
+      {with_default("threads", whole(0, 4096), "0", "Threads; 0 takes one per processor."),
+       with_default("schedule", words({"plain", "fused", "tiles"}), "tiles",
+                    "Order in which rows are visited; plain is the slow reference. Tiles become fused "
+                    "where x and y are both periodic."),
+       optional("tiles", list_of(whole(1, 100000), 3, 3),
+                "Tile size of the tiled schedule: rows along x, rows along y, steps (at most 32). "
+                "Without it the fastest is found by trying while the run goes on, and "
+                "remembered on this machine."),
+       with_default("pin", yes_no(), "true",
+                    "Keeps each thread on a processor of its own when the run has as many "
+                    "threads as there are processors.")},
+      {},
+      {},
+      {},
+      {}};
   return b;
 }
 

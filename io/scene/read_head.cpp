@@ -30,7 +30,8 @@ void read_head(Cursor& root, Scene& scene) {
     const std::vector<double> tiles = run.quantities("tiles");
     if (tiles[2] > most_tile_steps)
       run.reject("tiles", fmt::format("at most {} steps", most_tile_steps), "take fewer steps");
-    scene.problem.tiles = {static_cast<int>(tiles[0]), static_cast<int>(tiles[1]), static_cast<int>(tiles[2])};
+    scene.problem.tiles = {static_cast<int>(tiles[0]), static_cast<int>(tiles[1]),
+                           static_cast<int>(tiles[2])};
   }
 }
 

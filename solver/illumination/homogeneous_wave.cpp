@@ -27,11 +27,11 @@ class HomogeneousWave : public IncidentWave {
   void hold(int n_slots) override;
   int n_parts() const override { return 6; }
   void prepare(long step, int slot, int part) override;
-  void row(int slot, Component c, int i, int j, int k, int count, double* out) const override {
-    line(slot, c, {i, j, k}, Axis::z, count, out);
+  IndexRange row(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+    return line(slot, c, {i, j, k}, Axis::z, count, out);
   }
-  void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
-    line(slot, c, {i, j, k}, Axis::y, count, out);
+  IndexRange line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+    return line(slot, c, {i, j, k}, Axis::y, count, out);
   }
 
  private:
@@ -43,7 +43,7 @@ class HomogeneousWave : public IncidentWave {
   };
   using Tables = std::array<Table, 6>;  // by component
 
-  void line(int slot, Component c, Index3 at, Axis along, int count, double* out) const;
+  IndexRange line(int slot, Component c, Index3 at, Axis along, int count, double* out) const;
   Lattice lattice_;
   double dt_s_;
   Vec3 direction_{};
@@ -196,14 +196,14 @@ void HomogeneousWave::prepare(long step, int slot, int part) {
 
 // What a point gets must not depend on where its line begins or ends: positions are counted from the axis's
 // index 0, and each point is quiet or not by itself.
-void HomogeneousWave::line(int slot, Component c, Index3 at, Axis along, int count, double* out) const {
+IndexRange HomogeneousWave::line(int slot, Component c, Index3 at, Axis along, int count, double* out) const {
   const Table& table = slots_[static_cast<std::size_t>(slot)][static_cast<std::size_t>(index_of(c))];
   const auto a = static_cast<std::size_t>(index_of(along));
   const int begin = at[a];
   at[a] = 0;
   const double step = step_[a];
-  const double origin =
-      origin_[static_cast<std::size_t>(index_of(c))] + (at[0] * step_[0] + at[1] * step_[1] + at[2] * step_[2]);
+  const double origin = origin_[static_cast<std::size_t>(index_of(c))] +
+                        (at[0] * step_[0] + at[1] * step_[1] + at[2] * step_[2]);
   const auto position = [&](int m) { return origin + (begin + m) * step; };
   // The first and the last point that hear the wave lie where the line meets the ends of the pulse.
   int first = 0, last = count;
@@ -222,6 +222,7 @@ void HomogeneousWave::line(int slot, Component c, Index3 at, Axis along, int cou
   std::fill(out, out + first, 0.0);
   sample_(table.value.data(), origin, step, begin + first, last - first, out + first);
   std::fill(out + last, out + count, 0.0);
+  return {first, last};
 }
 
 }  // namespace

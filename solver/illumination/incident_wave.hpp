@@ -22,10 +22,11 @@ class IncidentWave {
   /// for different slots.
   virtual int n_parts() const = 0;
   virtual void prepare(long step, int slot, int part) = 0;
-  /// `count` values of a component from (i, j, k) on along z. The wave must be active and prepared.
-  virtual void row(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
-  /// `count` values of a component from (i, j, k) on along y.
-  virtual void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
+  /// `count` values of a component from (i, j, k) on along z. The wave must be active and prepared. Returns
+  /// the range of them that is not quiet; all others are zero.
+  virtual IndexRange row(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
+  /// `count` values of a component from (i, j, k) on along y, likewise.
+  virtual IndexRange line_y(int slot, Component c, int i, int j, int k, int count, double* out) const = 0;
 };
 
 /// Medium that carries the wave: lossless.

@@ -72,10 +72,11 @@ class LayeredWave : public IncidentWave {
   }
   int n_parts() const override { return 2; }
   void prepare(long step, int slot, int part) override;
-  void row(int slot, Component c, int i, int j, int k, int count, double* out) const override;
-  void line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
+  IndexRange row(int slot, Component c, int i, int j, int k, int count, double* out) const override;
+  IndexRange line_y(int slot, Component c, int i, int j, int k, int count, double* out) const override {
     row(slot, c, i, j, k, 1, out);  // the same everywhere in a plane
     std::fill_n(out, count, out[0]);
+    return {0, count};
   }
 
  private:
@@ -205,13 +206,14 @@ void LayeredWave::prepare(long step, int slot, int part) {
   }
 }
 
-void LayeredWave::row(int slot, Component c, int, int, int k, int count, double* out) const {
+IndexRange LayeredWave::row(int slot, Component c, int, int, int k, int count, double* out) const {
   const auto axis = static_cast<std::size_t>(index_of(axis_of(c)));
   const double direction = (is_electric(c) ? e_direction_ : h_direction_)[axis];
   const Tables& tables = slots_[static_cast<std::size_t>(slot)];
   const std::vector<double>& now = is_electric(c) ? tables.e : tables.h;
   for (int n = 0; n < count; ++n)
     out[n] = axis == 2 ? 0.0 : direction * now[static_cast<std::size_t>(k + n - first_k_)];
+  return {0, count};
 }
 
 }  // namespace

@@ -215,11 +215,13 @@ void TotalFieldSurface<Real>::sample_z_faces(bool electric, int i, int j_begin, 
   for (std::size_t t = 0; t < terms.size(); ++t) {
     const Term& term = terms[t];
     const int begin = std::max(j_begin, term.y.begin), end = std::min(j_end, term.y.end);
-    lines.values[t].clear();
+    lines.heard[t] = {};
     if (!term.x.contains(i) || begin >= end) continue;
-    lines.values[t].resize(static_cast<std::size_t>(j_end - j_begin), 0.0);
-    wave_->line_y(slot, term.source, i, begin, term.source_index, end - begin,
-                  lines.values[t].data() + (begin - j_begin));
+    if (lines.values[t].size() < static_cast<std::size_t>(j_end - j_begin))
+      lines.values[t].resize(static_cast<std::size_t>(j_end - j_begin));
+    const IndexRange heard = wave_->line_y(slot, term.source, i, begin, term.source_index, end - begin,
+                                           lines.values[t].data() + (begin - j_begin));
+    lines.heard[t] = {begin + heard.begin, begin + heard.end};
   }
 }
 
@@ -227,25 +229,28 @@ template <class Real>
 void TotalFieldSurface<Real>::add(bool electric, int i, int j, int slot, const ZFaceLines& lines,
                                   Real* const own[3]) const {
   const std::size_t field = electric ? 0 : 1;
-  if (has_side_terms_[field][static_cast<std::size_t>(i) * static_cast<std::size_t>(lattice_.cells(Axis::y) + 1) +
-                             static_cast<std::size_t>(j)]) {
+  if (has_side_terms_[field]
+                     [static_cast<std::size_t>(i) * static_cast<std::size_t>(lattice_.cells(Axis::y) + 1) +
+                      static_cast<std::size_t>(j)]) {
     thread_local std::vector<double> incident;
     for (const Term& term : side_terms_[field]) {
       if (!term.x.contains(i) || !term.y.contains(j)) continue;
       Index3 from{i, j, term.z.begin};
       from[at(term.normal)] = term.source_index;
       incident.resize(static_cast<std::size_t>(term.z.size()));
-      wave_->row(slot, term.source, from[0], from[1], from[2], term.z.size(), incident.data());
+      const IndexRange heard =
+          wave_->row(slot, term.source, from[0], from[1], from[2], term.z.size(), incident.data());
       const int component = index_of(axis_of(term.corrected));
       const double* gain =
           (electric ? e_gain_ : h_gain_)[static_cast<std::size_t>(component)].data() + term.z.begin;
-      add_(own[component] + term.z.begin, term.factor_per_m, gain, incident.data(), term.z.size());
+      add_(own[component] + term.z.begin + heard.begin, term.factor_per_m, gain + heard.begin,
+           incident.data() + heard.begin, heard.size());
     }
   }
   const std::vector<Term>& terms = z_terms_[field];
   for (std::size_t t = 0; t < terms.size(); ++t) {
     const Term& term = terms[t];
-    if (lines.values[t].empty() || !term.y.contains(j)) continue;
+    if (!lines.heard[t].contains(j)) continue;
     own[index_of(axis_of(term.corrected))][term.target] +=
         static_cast<Real>(term.z_factor * lines.values[t][static_cast<std::size_t>(j - lines.j_begin)]);
   }

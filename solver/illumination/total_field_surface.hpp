@@ -33,7 +33,8 @@ class TotalFieldSurface {
   /// Incident values on the faces across z, for rows j_begin .. j_end - 1 of one plane at one step.
   struct ZFaceLines {
     int j_begin = 0, j_end = 0;
-    std::array<std::vector<double>, 4> values;  // by term; empty where the term has none there
+    std::array<std::vector<double>, 4> values;  // by term
+    std::array<IndexRange, 4> heard;            // the j that have one
   };
   void sample_z_faces(bool electric, int i, int j_begin, int j_end, int slot, ZFaceLines& lines) const;
 
@@ -51,7 +52,7 @@ class TotalFieldSurface {
     int source_index = 0;  ///< index of the incident component along the normal
     double factor_per_m = 0.0;
     double z_factor = 0.0;  ///< of faces across z: with the gain at the target
-    IndexRange x, y, z;  ///< where the corrected component exists on the face; one index along the normal
+    IndexRange x, y, z;     ///< where the corrected component exists on the face; one index along the normal
   };
   std::vector<Term> make_terms(bool electric) const;
   bool touches(int i, int j, bool electric) const;

@@ -256,7 +256,8 @@ void AuditRecorder<Real>::before_block(const StepBlock& block) {
     kept_steps_.push_back(step);
     ++n_new_;
     for (Plane& plane : planes_)
-      captures_.aim(plane.capture, static_cast<int>(step - block.first), plane.block.data() + plane.size * place);
+      captures_.aim(plane.capture, static_cast<int>(step - block.first),
+                    plane.block.data() + plane.size * place);
   }
 }
 

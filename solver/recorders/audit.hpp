@@ -45,7 +45,7 @@ class AuditRecorder : public Recorder {
     std::size_t face, plane;
     int capture;
     std::size_t size;
-    AlignedArray<Real> block;                ///< [sample][position]
+    AlignedArray<Real> block;   ///< [sample][position]
     AlignedArray<double> sums;  ///< see SampleBlock
     std::size_t n_groups() const { return (size + sum_group - 1) / sum_group; }
   };

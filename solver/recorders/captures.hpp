@@ -67,7 +67,8 @@ class Captures {
     std::uint32_t box;
     std::uint32_t row_in_box;
   };
-  /// Of boxes one value deep along z: planes across z have many rows and little of each. k < 0: not such a box.
+  /// Of boxes one value deep along z: planes across z have many rows and little of each. k < 0: not such a
+  /// box.
   struct SingleValue {
     Component component;
     int k;

@@ -59,6 +59,9 @@ Child::Child(const std::vector<std::string>& arguments, const std::string& folde
   if (pid_ == 0) {
     for (const int s : {SIGINT, SIGTERM, SIGHUP, SIGPIPE}) ::signal(s, SIG_DFL);
     setenv("TERM", "vt100", 1);
+    // What other runs have left in the user's cache folder must not matter, nor anything be left there.
+    unsetenv("XDG_CACHE_HOME");
+    unsetenv("HOME");
     const int error = open(err_path_.c_str(), O_WRONLY | O_CREAT | O_TRUNC, 0600);
     const int nothing = open("/dev/null", O_RDONLY);
     if (chdir(folder.c_str()) != 0 || dup2(nothing, 0) < 0 || dup2(output.theirs, 1) < 0 ||

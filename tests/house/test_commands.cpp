@@ -2,6 +2,8 @@
 // README.md.
 #include <catch2/catch.hpp>
 #include <filesystem>
+#include <fstream>
+#include <iterator>
 #include <string>
 #include <vector>
 
@@ -171,7 +173,7 @@ TEST_CASE("A run writes its record and says where") {
   CHECK(forced.exit_code == 0);
   CHECK(forced.out.empty());
   CHECK(forced.err.empty());
-  CHECK(Record(folder.path() + "/small.h5").provenance.schedule == "fused");
+  CHECK(Record(folder.path() + "/small.h5").provenance.schedule == "tiles");
 }
 
 TEST_CASE("On a terminal progress is one rewritten line") {
@@ -195,4 +197,47 @@ TEST_CASE("Fields that become non-finite end the run with code 6 and keep the re
   CHECK(record.result.reason == StopReason::not_finite);
   CHECK(!record.result.not_finite_where.empty());
   CHECK(has(outcome.err, record.result.not_finite_where));
+}
+
+TEST_CASE("check --time marches and says how long the run will take") {
+  const ScratchFolder folder;
+  folder.write("small.yaml", small_scene(4.0));
+  const Outcome before = run_program({"check", "small.yaml"}, folder.path());
+  CHECK(has(before.out, "not known: no such scene has been run here yet"));
+  const Outcome timed = run_program({"check", "small.yaml", "--time"}, folder.path());
+  CHECK(timed.exit_code == 0);
+  CHECK(has(timed.out, "Gcell/s, measured just now"));
+}
+
+TEST_CASE("Tiles by hand are used, told, and refused when they make no sense") {
+  const ScratchFolder folder;
+  folder.write("small.yaml", small_scene(4.0));
+  const Outcome run = run_program({"run", "small.yaml", "--tiles", "9", "7", "5", "--no-pin"}, folder.path());
+  CHECK(run.exit_code == 0);
+  CHECK(has(run.out, "tiles of 9 x 7 rows and 5 steps"));
+  const Outcome many =
+      run_program({"run", "small.yaml", "--force", "--tiles", "9", "7", "33"}, folder.path());
+  CHECK(many.exit_code == 2);
+  CHECK(has(many.err, "at most 32"));
+  CHECK(run_program({"run", "small.yaml", "--force", "--tiles", "0", "7", "3"}, folder.path()).exit_code ==
+        2);
+}
+
+TEST_CASE("speed checks before it prints, and writes figures for machines") {
+  const ScratchFolder folder;
+  const Outcome speed = run_program(
+      {"speed", "--cells", "48", "--steps", "2", "--rounds", "1", "--more", "--json", "rates.json"},
+      folder.path());
+  CHECK(speed.exit_code == 0);
+  CHECK(has(speed.out, "tiles of the full scene bit for bit"));
+  for (const std::string row :
+       {"| copy ", "| textbook loop ", "| bare cube, fused sweep ", "| bare cube, tiles ",
+        "| full scene, tiles ", "double over single precision"})
+    CHECK(has(speed.out, row));
+  std::ifstream file(folder.path() + "/rates.json");
+  const std::string figures{std::istreambuf_iterator<char>(file), {}};
+  REQUIRE_FALSE(figures.empty());
+  CHECK(figures.front() == '[');
+  CHECK(has(figures, "\"id\": \"textbook\""));
+  CHECK(has(figures, "\"cells\": 48"));
 }

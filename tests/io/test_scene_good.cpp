@@ -325,6 +325,8 @@ TEST_CASE("Unequal cells, turned box, clamped positions, chosen audit") {
   CHECK(p.recording.energy_every == 25);
   CHECK(p.threads == 2);
   CHECK(p.schedule == Schedule::plain);
+  CHECK(p.tiles == TileShape{24, 12, 6});
+  CHECK_FALSE(p.pin_threads);
   CHECK(p.background == 1);
   REQUIRE(p.recording.snapshots.size() == 4);
   CHECK(p.recording.snapshots[0].components == std::vector<Component>{Component::ey, Component::hz});

@@ -8,6 +8,7 @@
 #include "io/scene/build_report.hpp"
 #include "io/scene/resolution.hpp"
 #include "io/scene/snapshot_size.hpp"
+#include "io/terminal.hpp"
 
 using namespace wanewall;
 
@@ -132,5 +133,11 @@ TEST_CASE("The report tells what will be built") {
   CHECK(has(full, "Values used"));
   CHECK(has(full, "shell.faces.x-.cells"));
   CHECK_FALSE(has(full, "this machine"));
+  CHECK(has(full, "not known: no such scene has been run here yet"));
+  // 1e9 cells a second.
+  const double seconds = static_cast<double>(scene.problem.last_step()) * scene.problem.lattice.n_cells() * 1e-9;
+  scene::ReportOptions timed;
+  timed.cells_per_second = 1e9;
+  CHECK(has(scene::build_report(scene, footprint, timed), "about " + duration_text(seconds) + " at 1 Gcell/s"));
   CHECK_FALSE(has(text, " \n"));
 }

@@ -6,6 +6,7 @@
 
 #include "solver/aligned_array.hpp"
 #include "solver/row_kernels.hpp"
+#include "solver/table_kernels.hpp"
 
 using namespace wanewall;
 
@@ -154,5 +155,40 @@ TEST_CASE("Row kernels agree with the plain loop, bit for bit", "[kernels]") {
   for (int code = 0; code <= static_cast<int>(best_vector_code()); ++code) {
     compare<float>(static_cast<VectorCode>(code));
     compare<double>(static_cast<VectorCode>(code));
+  }
+}
+
+TEST_CASE("Sums of a running DFT: every vector code gives the bits of the plain loop", "[kernels][exact]") {
+  std::mt19937 random(11);
+  std::uniform_real_distribution<double> uniform(-1.0, 1.0);
+  for (const std::size_t n_frequencies : {1u, 2u, 4u, 9u}) {
+    for (const std::size_t n_samples : {1u, 5u, 16u}) {
+      constexpr std::size_t n_groups = 3, stride = n_groups * sum_group + 5;
+      std::vector<float> samples(n_samples * stride);
+      std::vector<double> cosine(n_frequencies * n_samples), minus_sine(cosine.size()),
+          start(n_groups * n_frequencies * 2 * sum_group);
+      for (float& value : samples) value = static_cast<float>(uniform(random));
+      for (auto* values : {&cosine, &minus_sine, &start})
+        for (double& value : *values) value = uniform(random);
+      std::vector<double> expected = start;
+      for (std::size_t m = 0; m < n_groups * sum_group; ++m)
+        for (std::size_t f = 0; f < n_frequencies; ++f)
+          for (std::size_t s = 0; s < n_samples; ++s) {
+            double* sum =
+                expected.data() + (m / sum_group * n_frequencies + f) * 2 * sum_group + m % sum_group;
+            const auto value = static_cast<double>(samples[s * stride + m]);
+            sum[0] += cosine[f * n_samples + s] * value;
+            sum[sum_group] += minus_sine[f * n_samples + s] * value;
+          }
+      for (int code = 0; code <= static_cast<int>(best_vector_code()); ++code) {
+        AlignedArray<double> sums(start.size());
+        std::copy(start.begin(), start.end(), sums.data());
+        add_samples<float>(static_cast<VectorCode>(code))({samples.data(), stride, n_samples, cosine.data(),
+                                                           minus_sine.data(), n_frequencies, sums.data(),
+                                                           n_groups});
+        CAPTURE(code, n_frequencies, n_samples);
+        CHECK(std::memcmp(sums.data(), expected.data(), expected.size() * sizeof(double)) == 0);
+      }
+    }
   }
 }
