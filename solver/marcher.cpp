@@ -626,20 +626,21 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
       {
         // Blocks of equal length rather than long ones and a short rest.
         const TileShape& shape = choice_.next();
-        const long left = last - step_, blocks = (left + shape.steps - 1) / shape.steps;
+        const long most = block_steps(), left = last - step_, blocks = (left + most - 1) / most;
         block_ = {step_ + 1, static_cast<int>((left + blocks - 1) / blocks)};
         dipoles_.prepare(block_);
         if (captures_) captures_->begin_block(block_.n);
         for (Recorder* recorder : recorders) recorder->before_block(block_);
-        if (schedule_ == Schedule::tiles) tiles_.prepare(shape, block_.first, block_.n);
+        if (schedule() == Schedule::tiles) tiles_.prepare(shape, block_.first, block_.n);
       }
       if (surface_) surface_->prepare(block_);
 #pragma omp barrier
       const double start_s = omp_get_wtime();
-      if (schedule_ == Schedule::tiles)
+      const Schedule now = schedule();
+      if (now == Schedule::tiles)
         tiles_.sweep(*this);
       else
-        for (long s = block_.first; s < block_.end(); ++s) sweep(schedule_, rows_, slabs_, thread, s, *this);
+        for (long s = block_.first; s < block_.end(); ++s) sweep(now, rows_, slabs_, thread, s, *this);
 #pragma omp barrier
       const double swept_s = omp_get_wtime() - start_s;
       for (Recorder* recorder : recorders) recorder->after_block_shared(thread, threads_);
@@ -648,7 +649,7 @@ void Marcher<Real>::advance(long n, const std::vector<Recorder*>& recorders) {
       {
         step_ = block_.end() - 1;
         // A block cut short tells nothing of its shape.
-        if (4 * block_.n >= 3 * choice_.next().steps) choice_.took(block_.n, swept_s);
+        if (4 * block_.n >= 3 * block_steps()) choice_.took(block_.n, swept_s);
         try {
           for (Recorder* recorder : recorders) recorder->after_block();
         } catch (...) {

@@ -32,9 +32,11 @@ class Marcher : public RowWork {
   /// Advances from step() to step() + n, all recorders served. Starts the threads once.
   void advance(long n, const std::vector<Recorder*>& recorders);
   /// Steps that are made together when as many are asked for.
-  int block_steps() const { return choice_.next().steps; }
-  /// What is really used: fused where tiles were asked for and cannot be.
-  Schedule schedule() const { return schedule_; }
+  int block_steps() const { return schedule() == Schedule::tiles ? choice_.next().steps : 8; }
+  /// What is really used: fused where tiles were asked for and cannot be, or are of one step.
+  Schedule schedule() const {
+    return schedule_ == Schedule::tiles && choice_.next().steps == 1 ? Schedule::fused : schedule_;
+  }
   const TileChoice& tile_choice() const { return choice_; }
 
   long step() const { return step_; }

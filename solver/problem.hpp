@@ -116,7 +116,8 @@ std::string_view name_of(Schedule schedule);
 /// The schedule of a name that name_of gives.
 Schedule schedule_named(std::string_view name);
 
-/// Sizes of a tile of the tiled schedule (solver/schedule.hpp).
+/// Sizes of a tile of the tiled schedule (solver/schedule.hpp). Tiles of one step gain nothing over the fused
+/// sweep, which is then used.
 struct TileShape {
   int x_rows = 16, y_rows = 16;  ///< cross-section
   int steps = 8;                 ///< that a tile is advanced at a time

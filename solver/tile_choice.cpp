@@ -35,6 +35,7 @@ TileChoice::TileChoice(const RowGroups& rows, std::size_t row_bytes, int threads
   add(16 * scale, 16 * scale, 4);
   // A lattice that fits into the caches needs no tiles, only work for every thread.
   add(0.5 * n_x / threads, n_y, 8);
+  add(n_x, n_y, 1);
   for (std::size_t n = trials_.size(); n-- > 0;) turns_.push_back(n);
   turns_.push_back(0);  // once more, to warm up
 }
@@ -51,16 +52,17 @@ void TileChoice::took(int steps, double seconds) {
   steps_ = 0;
   seconds_ = 0.0;
   if (!turns_.empty()) return;
-  std::vector<std::size_t> order(trials_.size());
-  for (std::size_t n = 0; n < order.size(); ++n) order[n] = n;
+  std::vector<std::size_t> order;
+  for (std::size_t n = 0; n < trials_.size(); ++n) order.push_back(n);
   std::sort(order.begin(), order.end(), [&](std::size_t a, std::size_t b) {
     return trials_[a].seconds_per_step < trials_[b].seconds_per_step;
   });
   best_ = order[0];
   if (is_final_) return;
   is_final_ = true;
-  order.resize(std::min(order.size(), finalists));
-  for (int turn = 0; turn < final_turns; ++turn) turns_.insert(turns_.end(), order.begin(), order.end());
+  for (int turn = 0; turn < final_turns; ++turn)
+    for (std::size_t place = 0; place < std::min(order.size(), finalists); ++place)
+      turns_.push_back(order[place]);
 }
 
 }  // namespace wanewall

@@ -1,4 +1,5 @@
 // wanewall check: what a scene will build, and whether it can work.
+#include <chrono>
 #include <iostream>
 #include <memory>
 #include <string>
@@ -30,9 +31,12 @@ ExitCode check(const CheckOptions& options) {
     std::cout << scene_reference_markdown();
     return ExitCode::done;
   }
+  const auto start = std::chrono::steady_clock::now();
   const Scene scene = read_scene(options.scene_path);
   const Footprint footprint = run_footprint(scene.problem);
   scene::ReportOptions report{options.values, machine_memory_bytes()};
+  // A run does the same before its first step.
+  report.start_seconds = std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
   if (options.time) {
     constexpr double for_seconds = 8.0;
     require_memory(footprint);

@@ -159,7 +159,9 @@ std::string cost_text(const RunResult& result, const Problem& problem, std::opti
                            : result.tiles_are_settled ? " (found by trying)"
                                                       : " (the run ended before all shapes were tried)");
   else if (problem.schedule == Schedule::tiles)
-    schedule += " (no tiles where x and y are both periodic)";
+    schedule += problem.lattice.periodic[0] && problem.lattice.periodic[1]
+                    ? " (no tiles where x and y are both periodic)"
+                    : " (faster here than tiles)";
   text += fmt::format(" on {} thread{}, {}, {} code", result.threads, result.threads == 1 ? "" : "s",
                       schedule, result.vector_code);
   if (disk_wait_s) text += fmt::format("; waited {} for the disk", duration_text(*disk_wait_s));

@@ -24,11 +24,13 @@ struct Options {
 };
 
 std::string shape_text(const TileShape& shape) {
+  if (shape.steps == 1) return "none, the fused sweep is faster";
   return fmt::format("{} x {} rows and {} steps", shape.x_rows, shape.y_rows, shape.steps);
 }
 
 std::string result_text(const SpeedResult& r) {
   const SpeedSetting& s = r.setting;
+  const double in_cache = r.in_cache.median() * s.threads;
   std::string text = fmt::format(
       "processor: {}, {} threads, {} code, single precision unless said otherwise\n"
       "cube of {} cells along each edge, all of them counted; {} rounds of {} steps in turn\n"
@@ -45,9 +47,9 @@ std::string result_text(const SpeedResult& r) {
     text += fmt::format("| {:<9} | {:13.1f} | {:5.1f} | {:4.1f} |\n", row.name, row.median(), row.least(),
                         row.most());
   text += fmt::format(
-      "\none sweep a step through the memory, 48 bytes a cell, could do {:.3f} Gcell/s; the fused "
-      "loop in cache does {:.3f}\n\n",
-      r.one_sweep_limit(), r.in_cache.median());
+      "\none sweep a step through the memory, 48 bytes a cell, could do {:.3f} Gcell/s; one core "
+      "in its cache does {:.3f}, all of them {:.3f}\n\n",
+      r.one_sweep_limit(), r.in_cache.median(), in_cache);
   text += fmt::format(
       "| {:<35} | median [Gcell/s] | least | most  | bytes per cell-step | of one-sweep limit | of "
       "in-cache rate | over textbook |\n",
@@ -61,7 +63,7 @@ std::string result_text(const SpeedResult& r) {
         fmt::format("| {:<35} | {:16.3f} | {:.3f} | {:.3f} | {:>19} | {:17.0f}% | {:15.0f}% | {:13.2f} |\n",
                     row.name, row.median(), row.least(), row.most(),
                     row.bytes_per_cell_step > 0.0 ? fmt::format("{:.1f}", row.bytes_per_cell_step) : "",
-                    100.0 * row.median() / r.one_sweep_limit(), 100.0 * row.median() / r.in_cache.median(),
+                    100.0 * row.median() / r.one_sweep_limit(), 100.0 * row.median() / in_cache,
                     row.median() / r.loops[0].median());
   text += fmt::format(
       "\nbytes per cell-step: what the fields must move through the memory at the least\n"

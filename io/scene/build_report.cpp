@@ -46,8 +46,10 @@ double extent_m(const MeshLines& lines, int first_node, int last_node) {
 std::string time_text(double updates, const ReportOptions& options) {
   if (options.cells_per_second <= 0.0)
     return "not known: no such scene has been run here yet; 'wanewall check --time' measures";
-  return fmt::format("about {} at {:.3g} Gcell/s, measured {}",
-                     duration_text(updates / options.cells_per_second), options.cells_per_second * 1e-9,
+  const double march_s = updates / options.cells_per_second;
+  return fmt::format("about {}: {} to start, {} of marching at {:.3g} Gcell/s, measured {}",
+                     duration_text(options.start_seconds + march_s), duration_text(options.start_seconds),
+                     duration_text(march_s), options.cells_per_second * 1e-9,
                      options.is_measured_now ? "just now" : "in the last run of this kind here");
 }
 

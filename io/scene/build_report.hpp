@@ -13,6 +13,7 @@ struct ReportOptions {
   double machine_bytes = 0.0;  ///< memory of this machine; 0: not known
   double cells_per_second = 0.0;  ///< measured for this kind of scene on this machine; 0: not known
   bool is_measured_now = false;
+  double start_seconds = 0.0;  ///< what comes before the march: reading, designing the shell, painting
 };
 
 std::string build_report(const Scene& scene, const Footprint& footprint, const ReportOptions& options);

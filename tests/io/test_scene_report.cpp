@@ -135,9 +135,13 @@ TEST_CASE("The report tells what will be built") {
   CHECK_FALSE(has(full, "this machine"));
   CHECK(has(full, "not known: no such scene has been run here yet"));
   // 1e9 cells a second.
-  const double seconds = static_cast<double>(scene.problem.last_step()) * scene.problem.lattice.n_cells() * 1e-9;
+  const double seconds =
+      static_cast<double>(scene.problem.last_step()) * scene.problem.lattice.n_cells() * 1e-9;
   scene::ReportOptions timed;
   timed.cells_per_second = 1e9;
-  CHECK(has(scene::build_report(scene, footprint, timed), "about " + duration_text(seconds) + " at 1 Gcell/s"));
+  timed.start_seconds = 3600.0;
+  const std::string with_time = scene::build_report(scene, footprint, timed);
+  CHECK(has(with_time, "about " + duration_text(3600.0 + seconds) + ": " + duration_text(3600.0) +
+                           " to start, " + duration_text(seconds) + " of marching at 1 Gcell/s"));
   CHECK_FALSE(has(text, " \n"));
 }
