@@ -38,7 +38,8 @@ struct Progress {
   double energy_db = 0.0;  ///< relative to the largest so far
 };
 
-/// Asked every few hundredths of a second of a run, between steps. Answers false to end the run there.
+/// Asked between blocks of steps, about every few hundredths of a second of a run or, where a block takes
+/// longer, after each. Answers false to end the run there.
 class Monitor {
  public:
   virtual ~Monitor() = default;

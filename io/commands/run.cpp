@@ -348,7 +348,8 @@ void add_run_command(CLI::App& app, Action& action) {
           ->type_name("[FACES]");
   command->add_flag("--quiet", options->quiet, "Say nothing unless something is wrong");
   command->footer(
-      "Ctrl-C ends the run at the next step and keeps what was computed (exit code 5); a second Ctrl-C ends "
+      "Ctrl-C ends the run after the few steps in hand and keeps what was computed (exit code 5); a second "
+      "Ctrl-C ends "
       "at once\n"
       "and keeps nothing.\n\n"
       "Example:\n"
