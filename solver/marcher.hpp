@@ -4,6 +4,7 @@
 #include <memory>
 #include <span>
 
+#include "solver/field_survey.hpp"
 #include "solver/fields.hpp"
 #include "solver/illumination/dipole_rows.hpp"
 #include "solver/illumination/total_field_surface.hpp"
@@ -57,9 +58,11 @@ class Marcher : public RowWork {
   int threads() const { return threads_; }
 
   /// Energy in the clear volume after the last step [J], see EnergySeries.
-  double clear_energy_j() const;
+  double clear_energy_j() const {
+    return wanewall::clear_energy_j(problem_.lattice, fields_, e_media_, h_media_, threads_);
+  }
   /// First component and cell that is not finite, as text; empty when all are.
-  std::string find_not_finite() const;
+  std::string find_not_finite() const { return wanewall::find_not_finite(fields_); }
 
   void advance_e(const RowBlock& block, long step, const Ahead& ahead) override;
   void advance_h(const RowBlock& block, long step) override;
@@ -100,9 +103,9 @@ class Marcher : public RowWork {
   void make_places();
   void make_extras();
   void advance_e_group(const RowBlock& block, int slot, const Ahead& ahead);
-  void advance_e_row(int i, int j, int j_end, int slot, const Given& given, const Ahead& ahead);
+  void advance_e_row(int i, int j, int slot, const Given& given, const Ahead& ahead);
   const typename TotalFieldSurface<Real>::ZFaceLines& surface_lines(bool electric, int i, int j, int j_end,
-                                                                    int slot);
+                                                                    int slot, bool& is_sampled) const;
   void mirror_h(int i, int j, RowTask<Real>& t);
   void solve_columns(Axis axis, bool high, int across, Real* difference, std::ptrdiff_t difference_step);
   const MoebiusColumns<Real>& columns(Axis axis, bool high) const {
@@ -111,7 +114,7 @@ class Marcher : public RowWork {
   void fill_task(int i, int j, bool electric, RowTask<Real>& t);
   void step_task(int i, int j, bool electric, RowTask<Real>& t);
   void set_ahead(const Ahead& ahead, RowTask<Real>& t) const;
-  void advance_e_task(int i, int j, int j_end, int slot, RowTask<Real>& t);
+  void advance_e_task(int i, int j, int j_end, int slot, RowTask<Real>& t, bool& is_sampled);
   void add_z_layers(const RowTask<Real>& t, const RowMedia<Real>& media, int i, int j, bool electric);
   void add_z_walls(const RowTask<Real>& t, const RowMedia<Real>& media);
   void hold_z_walls(const RowTask<Real>& t);
